@@ -1,0 +1,135 @@
+/**
+ * The shapes of the reports: what each command answers, as JSON. The keys are part of the interface;
+ * `schema` names the command and the version of its shape.
+ */
+import type { Counts } from './circuit/counts.ts';
+
+type Head<Command extends string> = {
+  schema: `wiregauge/${Command}@1`;
+  seed: number;
+  /** `any/kept`, `any/measured`, `zero/kept`, `zero/measured`, `program` or `mixed`. */
+  contract: string;
+  /** True when the file, not an option, decided the contract. */
+  contractFromFile: boolean;
+  /** Wall time; filled in by the shell, 0 from the core. */
+  seconds: number;
+  /** Things worth knowing that are no errors, in plain sentences. */
+  notes: string[];
+};
+
+/** Output `leaves` can be gone before input `enters` comes: both are wire numbers of the original. */
+export type Pair = { leaves: number; enters: number };
+
+export type HowSure = 'exact' | 'upper' | 'lower';
+
+export type WidthRow = {
+  contract: 'any/kept' | 'any/measured' | 'zero/kept' | 'program';
+  width: number;
+  how: HowSure;
+  /** Why it is that and no less or no more, in a sentence. */
+  why: string;
+};
+
+export type SurveyReport = Head<'survey'> & {
+  circuit: string;
+  counts: Counts;
+  structure: {
+    width: number;
+    method: string;
+    how: HowSure;
+    /** reach[out][in]: a path of gates leads from input `in` to output `out`. */
+    reach: boolean[][];
+    pairs: Pair[];
+  };
+  early: { width: number; method: string; how: HowSure } | null;
+  /** Null when neither dense matrices nor probes were possible; `notes` then says why. */
+  influence: {
+    method: 'dense' | 'probes' | 'windows';
+    kind: 'kept' | 'measured';
+    /** kept: a lower bound on process infidelity; measured: on the error of the bit's probability. */
+    table: number[][];
+  } | null;
+  causal: { width: number; method: string; how: HowSure; pairs: Pair[] } | null;
+  /** Pairs that structure forbids and influence allows. */
+  openings: Pair[];
+  widths: WidthRow[];
+  /** What fewer wires would cost at least, when dense influence is known. */
+  approximate?: { wires: number; infidelityAtLeast: number }[];
+};
+
+export type DistanceReport = {
+  hilbertSchmidt: number;
+  processInfidelity: number;
+  /** Half the diamond distance, sqrt(1 - r^2); null where it was not computed. */
+  worstCase: number | null;
+  angle: number;
+  /** Bound on the rounding error of `hilbertSchmidt`; null where none is known. */
+  errorBar?: number | null;
+};
+
+export type FitRow = {
+  block: number;
+  wires: number[];
+  entanglers: number;
+  iterations: number;
+  distance: number;
+  status: string;
+};
+
+export type NarrowReport = Head<'narrow'> & {
+  circuit: string;
+  verdict: 'narrowed' | 'impossible' | 'undecided';
+  reason: string;
+  before: Counts;
+  after: Counts | null;
+  /** On which wire of the new circuit output `leaves` makes room for input `enters`. */
+  reuse: { wire: number; leaves: number; enters: number }[];
+  distance: DistanceReport | null;
+  bracket: { lower: number; reached: number | null } | null;
+  check: { method: string; proof: boolean; unfoldedWires: number; distance: number } | null;
+  native: string;
+  estimate: { before: number; after: number } | null;
+  fits: FitRow[];
+  files: string[];
+};
+
+export type Witness = {
+  /** The input state in words and as one basis state or product state per wire. */
+  input: string;
+  /** The output, a bit string or an observable, where the probabilities differ most. */
+  output: string;
+  probabilityOriginal: number;
+  probabilityRewritten: number;
+};
+
+export type CompareReport = Head<'compare'> & {
+  original: string;
+  rewritten: string;
+  verdict: 'same' | 'different' | 'undecided';
+  distance: DistanceReport | null;
+  /** Global phase: rewritten = e^{i phase} original. Null when it has no meaning. */
+  phase: number | null;
+  method: string;
+  proof: boolean;
+  witness: Witness | null;
+  /** relabelling[k] = output wire of the rewritten circuit that carries output k; null when not asked for. */
+  relabelling: number[] | null;
+};
+
+export type BuildReport = Head<'build'> & {
+  target: string;
+  verdict: 'built' | 'approximate' | 'undecided';
+  counts: Counts;
+  distance: DistanceReport;
+  entanglers: {
+    used: number;
+    /** A lower bound on the number needed. */
+    bound: number;
+    /** How the count is known: meets a theorem's bound, every smaller skeleton was tried, or just found. */
+    boundKind: 'proven' | 'exhausted below' | 'found';
+  };
+  frontier: { entanglers: number; distance: number }[];
+  fits: FitRow[];
+  native: string;
+  files: string[];
+};
