@@ -53,15 +53,23 @@ export function nearestWord(word: string, known: Iterable<string>): string | und
   return best;
 }
 
-/** Levenshtein distance (Soviet Physics Doklady 10, 707 (1966)), two rows of the table at a time. */
+/**
+ * Number of slips between two words: a letter wrong, missing, too many, or two neighbours swapped (Damerau,
+ * Commun. ACM 7, 171 (1964); restricted form), three rows of the table at a time.
+ */
 function editDistance(a: string, b: string): number {
+  let beforePrevious: number[] = [];
   let previous = Array.from({ length: b.length + 1 }, (_, j) => j);
   for (let i = 1; i <= a.length; i++) {
     const row = [i];
     for (let j = 1; j <= b.length; j++) {
       const substitution = previous[j - 1]! + (a[i - 1] === b[j - 1] ? 0 : 1);
-      row.push(Math.min(previous[j]! + 1, row[j - 1]! + 1, substitution));
+      let best = Math.min(previous[j]! + 1, row[j - 1]! + 1, substitution);
+      const isSwap = i > 1 && j > 1 && a[i - 1] === b[j - 2] && a[i - 2] === b[j - 1];
+      if (isSwap) best = Math.min(best, beforePrevious[j - 2]! + 1);
+      row.push(best);
     }
+    beforePrevious = previous;
     previous = row;
   }
   return previous[b.length]!;
