@@ -51,7 +51,12 @@ export type GateOperation = Common & {
   matrix?: Float64Array;
   /** For `unitary` only: the name to show and to write (`gate NAME ...`). */
   label?: string;
+  /** For `unitary` only: how the matrix is made of other gates, where that is known, so that it can be written. */
+  definition?: GateBody;
 };
+
+/** Gates on wires 0 .. k-1 and a factor e^{i phase}: the body of a gate definition. */
+export type GateBody = { operations: readonly GateOperation[]; phase: number };
 
 export type MeasureOperation = Common & {
   kind: 'measure';

@@ -1,0 +1,471 @@
+/**
+ * Gate definitions and gate calls: checks a definition once, writes every call out in gates of the table.
+ *
+ * A definition that equals a gate of the table under the same name (compared as matrices at several generic
+ * angles; its angles must be linear in the parameters, so that equal there means equal everywhere) stands
+ * for that gate: a written circuit with its `gate` definitions reads back to the same operations.
+ */
+import type { GateOperation } from '../circuit/circuit.ts';
+import { type GateEntry, gateTable } from '../circuit/gates.ts';
+import { nearestWord } from '../input-error.ts';
+import { hilbertSchmidtDistance } from '../numeric/distance.ts';
+import {
+  controlPiece,
+  foldControls,
+  invertPiece,
+  type Piece,
+  pieceMatrix,
+  powerPiece,
+} from './openqasm-modifiers.ts';
+import {
+  CONSTANTS,
+  emit,
+  failUnknown,
+  lookUp,
+  loopValues,
+  type Meaning,
+  type Reader,
+  resolve,
+  spend,
+  type UserGate,
+  type Value,
+} from './openqasm-names.ts';
+import { Abandoned, fail, report } from './openqasm-problems.ts';
+import type { Expression, GateCall, GateDefinition, Statement } from './openqasm-tree.ts';
+import { evaluateInteger, evaluateReal } from './openqasm-values.ts';
+
+/** Definitions that call each other. */
+export const DEFINITIONS_DEEP_MAX = 200;
+const NO_ANGLES: readonly number[] = Object.freeze([]);
+const NO_CONTROLS: readonly boolean[] = Object.freeze([]);
+/** Generic angles for comparing a definition with the table's gate; some far outside a turn. */
+const SAMPLES = [0.7391, -1.2847, 2.6173, 17.4412, -9.8731];
+
+type Callee = { name: string; wires: number; angles: number } & (
+  | { kind: 'table'; entry: GateEntry }
+  | { kind: 'user'; gate: UserGate }
+  | { kind: 'phase' }
+);
+
+/** What a call's name stands for; reports an unknown name. */
+function findCallee(r: Reader, call: { name: { name: string; at: number } }): Callee {
+  const { name, at } = call.name;
+  const user = r.gates.get(name);
+  if (user) {
+    if (user.broken) throw new Abandoned();
+    const { operands, parameters } = user.definition;
+    const entry = user.sameAs ? gateTable.get(user.sameAs) : undefined;
+    const counts = { name, wires: operands.length, angles: parameters.length };
+    return entry ? { kind: 'table', entry, ...counts } : { kind: 'user', gate: user, ...counts };
+  }
+  const { dialect, spoilt } = r.parser;
+  if (name === 'gphase' && dialect === '3') return { kind: 'phase', name, wires: 0, angles: 1 };
+  if (spoilt.has(name)) throw new Abandoned();
+  const entry = gateTable.get(name);
+  const isKnown = entry?.known.includes(dialect);
+  const isBuiltIn = name === 'U' || (name === 'CX' && dialect === '2.0');
+  if (entry && isKnown && !isBuiltIn && !r.included) {
+    const file = dialect === '3' ? 'stdgates.inc' : 'qelib1.inc';
+    const hint = `add include "${file}"; before the first gate`;
+    report(
+      r.problems,
+      at,
+      'missing-include',
+      `gate ${name} is used without the standard's gates`,
+      hint,
+    );
+    r.included = true;
+  }
+  if (entry && isKnown) {
+    return { kind: 'table', entry, name, wires: entry.wires, angles: entry.angles };
+  }
+  return failUnknownGate(r, name, at, entry);
+}
+
+function failUnknownGate(r: Reader, name: string, at: number, entry?: GateEntry): never {
+  const meaning = lookUp(r, name);
+  if (meaning)
+    fail(
+      r.problems,
+      at,
+      'wrong-kind',
+      `expected a gate, got ${name}, which is a register or a constant`,
+    );
+  const { dialect } = r.parser;
+  if (entry) {
+    const where = dialect === '3' ? 'stdgates.inc of OpenQASM 3' : 'the header of OpenQASM 2.0';
+    fail(
+      r.problems,
+      at,
+      'unknown-gate',
+      `unknown gate: ${name}`,
+      `${where} lacks it: define it with gate ${name} ... { ... }`,
+    );
+  }
+  const known = [...gateTable.values()].filter((e) => e.known.includes(dialect)).map((e) => e.name);
+  const near = nearestWord(name, [...r.gates.keys(), ...known]);
+  const hint = near ? `did you mean ${near}?` : undefined;
+  return fail(r.problems, at, 'unknown-gate', `unknown gate: ${name}`, hint);
+}
+
+function checkAngleCount(r: Reader, call: GateCall, callee: Callee): void {
+  const got = call.angles.length;
+  if (got === callee.angles) return;
+  const message = `gate ${callee.name} takes ${plural(callee.angles, 'angle')}, got ${got}`;
+  fail(r.problems, call.name.at, 'wrong-count', message);
+}
+
+function checkWireCount(r: Reader, call: GateCall, callee: Callee, controls: number): void {
+  const got = call.operands.length;
+  if (got === callee.wires + controls) return;
+  const withControls = controls > 0 ? ` and ${plural(controls, 'control')}` : '';
+  const message = `gate ${callee.name} takes ${plural(callee.wires, 'qubit')}${withControls}, got ${got}`;
+  fail(r.problems, call.name.at, 'wrong-count', message);
+}
+
+const plural = (n: number, noun: string): string => `${n} ${noun}${n === 1 ? '' : 's'}`;
+
+type Modification = { at: number } & (
+  | { kind: 'controls'; positive: boolean; count: number }
+  | { kind: 'inverse' }
+  | { kind: 'power'; exponent: number }
+);
+
+/** Modifiers with their numbers, outermost first. */
+function modificationsOf(r: Reader, call: GateCall): Modification[] {
+  return call.modifiers.map((modifier): Modification => {
+    const { at } = modifier;
+    if (modifier.kind === 'inverse') return { kind: 'inverse', at };
+    if (modifier.kind === 'power') {
+      return { kind: 'power', at, exponent: evaluateReal(r, modifier.exponent, 'an exponent') };
+    }
+    const { count: node, positive } = modifier;
+    const count = node ? evaluateInteger(r, node, 'a number of controls') : 1;
+    if (node && count < 1) {
+      fail(r.problems, node.at, 'wrong-count', `the number of controls must be >= 1, got ${count}`);
+    }
+    return { kind: 'controls', at, positive, count };
+  });
+}
+
+function controlCount(modifications: readonly Modification[]): number {
+  return modifications.reduce((sum, m) => sum + (m.kind === 'controls' ? m.count : 0), 0);
+}
+
+/** The gates of a call on wires already found: first the controls, then the gate's own. */
+function callPiece(
+  r: Reader,
+  at: number,
+  callee: Callee,
+  angles: readonly number[],
+  modifications: readonly Modification[],
+  wires: readonly number[],
+): Piece {
+  let first = controlCount(modifications);
+  let piece = barePiece(r, at, callee, angles, first === 0 ? wires : wires.slice(first));
+  for (let k = modifications.length - 1; k >= 0; k--) {
+    const m = modifications[k]!;
+    if (m.kind === 'inverse') piece = invertPiece(r, m.at, piece);
+    else if (m.kind === 'power') {
+      piece = powerPiece(r, m.at, piece, m.exponent, wires.slice(first), callee.name);
+    } else {
+      for (let c = 0; c < m.count; c++) {
+        piece = controlPiece(r, m.at, piece, wires[--first]!, m.positive);
+      }
+    }
+  }
+  return piece;
+}
+
+function barePiece(
+  r: Reader,
+  at: number,
+  callee: Callee,
+  angles: readonly number[],
+  wires: readonly number[],
+): Piece {
+  spend(r, at, 1 + wires.length);
+  if (callee.kind === 'phase') return { operations: [], phase: angles[0]! };
+  if (callee.kind === 'table') {
+    return { operations: [tableGate(callee.entry.name, angles, wires)], phase: 0 };
+  }
+  const { definition } = callee.gate;
+  const names = new Map<string, Meaning>();
+  definition.parameters.forEach(({ name }, k) => {
+    names.set(name, { kind: 'value', value: { kind: 'float', value: angles[k]! } });
+  });
+  const places = new Map(definition.operands.map(({ name }, k) => [name, wires[k]!]));
+  // the body sees global constants and its own parameters, not what surrounds the call
+  const { scopes } = r;
+  r.scopes = [scopes[0]!, names];
+  const piece: Piece = { operations: [], phase: 0 };
+  expandBody(r, definition.body, places, piece);
+  r.scopes = scopes;
+  return piece;
+}
+
+function tableGate(
+  name: string,
+  angles: readonly number[],
+  wires: readonly number[],
+): GateOperation {
+  return { kind: 'gate', name, angles, wires, controls: NO_CONTROLS, power: 1 };
+}
+
+function expandBody(
+  r: Reader,
+  body: readonly Statement[],
+  places: ReadonlyMap<string, number>,
+  piece: Piece,
+): void {
+  for (const statement of body) {
+    if (statement.kind === 'call') {
+      const callee = findCallee(r, statement);
+      const angles = anglesOf(r, statement);
+      const wires = statement.operands.map(({ name }) => places.get(name)!); // known: the definition was checked
+      const modifications = modificationsOf(r, statement);
+      checkWireCount(r, statement, callee, controlCount(modifications));
+      const inner = callPiece(r, statement.at, callee, angles, modifications, wires);
+      for (const operation of inner.operations) piece.operations.push(operation);
+      piece.phase += inner.phase;
+    } else if (statement.kind === 'barrier') {
+      const named = statement.operands.map(({ name }) => places.get(name)!);
+      const wires = named.length > 0 ? named : [...places.values()];
+      spend(r, statement.at, wires.length);
+      piece.operations.push({ kind: 'barrier', wires });
+    } else if (statement.kind === 'for') {
+      for (const value of loopValues(r, statement.over)) {
+        spend(r, statement.at, 1);
+        r.scopes.push(new Map([[statement.name.name, integerMeaning(value)]]));
+        expandBody(r, statement.body, places, piece);
+        r.scopes.pop();
+      }
+    }
+  }
+}
+
+export function integerMeaning(value: number): Meaning {
+  const constant: Value = { kind: 'int', value };
+  return { kind: 'value', value: constant };
+}
+
+function anglesOf(r: Reader, call: GateCall): readonly number[] {
+  return call.angles.length === 0
+    ? NO_ANGLES
+    : call.angles.map((node) => evaluateReal(r, node, 'an angle'));
+}
+
+/** Executes a gate call of the circuit itself: broadcasts over registers and emits the gates. */
+export function executeCall(r: Reader, call: GateCall & { at: number }): void {
+  const callee = findCallee(r, call);
+  checkAngleCount(r, call, callee);
+  const modifications = call.modifiers.length === 0 ? [] : modificationsOf(r, call);
+  checkWireCount(r, call, callee, controlCount(modifications));
+  const angles = anglesOf(r, call);
+  const operands = call.operands.map((operand) => resolve(r, operand, 'qubits'));
+  let length = -1;
+  operands.forEach(({ places, scalar }, k) => {
+    if (scalar) return;
+    if (length >= 0 && places.length !== length) {
+      const message = `expected registers of one length, got ${length} and ${places.length} qubits`;
+      fail(r.problems, call.operands[k]!.at, 'size-mismatch', message);
+    }
+    length = places.length;
+  });
+  for (let k = 0; k < (length < 0 ? 1 : length); k++) {
+    const wires = operands.map(({ places, scalar }) => places[scalar ? 0 : k]!);
+    checkDistinct(r, call, wires);
+    const isPlain = callee.kind === 'table' && modifications.length === 0;
+    if (isPlain) {
+      spend(r, call.at, 1 + wires.length);
+      emit(r, call.at, tableGate(callee.entry.name, angles, wires));
+    } else emitPiece(r, call.at, callPiece(r, call.at, callee, angles, modifications, wires));
+  }
+}
+
+function emitPiece(r: Reader, at: number, piece: Piece): void {
+  r.globalPhase += piece.phase;
+  for (const operation of piece.operations) {
+    emit(r, at, operation.kind === 'gate' ? foldControls(operation) : { ...operation });
+  }
+}
+
+function checkDistinct(r: Reader, call: GateCall, wires: readonly number[]): void {
+  for (let j = 1; j < wires.length; j++) {
+    if (wires.indexOf(wires[j]!) === j) continue;
+    const message = `gate ${call.name.name} uses the same qubit twice`;
+    fail(r.problems, call.operands[j]!.at, 'duplicate-operand', message);
+  }
+}
+
+/** Checks a definition and enters it. */
+export function defineGate(r: Reader, definition: GateDefinition & { at: number }): void {
+  const { name, at } = definition.name;
+  const { dialect } = r.parser;
+  const entry = gateTable.get(name);
+  const isBuiltIn = name === 'U' || name === 'gphase' || (name === 'CX' && dialect === '2.0');
+  const isIncluded = r.included && dialect === '3' && entry?.known.includes('3');
+  if (r.gates.has(name) || isBuiltIn || isIncluded) {
+    fail(r.problems, at, 'already-declared', `gate ${name} is already defined`);
+  }
+  const gate: UserGate = { definition, depth: 1, broken: true, sameAs: null };
+  r.gates.set(name, gate);
+  const before = r.problems.errors.length;
+  const names = new Set<string>();
+  for (const { name: part, at: place } of [...definition.parameters, ...definition.operands]) {
+    if (names.has(part)) {
+      report(r.problems, place, 'already-declared', `the gate has two parts named ${part}`);
+    }
+    names.add(part);
+  }
+  checkBody(r, gate, definition.body, new Set(definition.parameters.map((p) => p.name)));
+  if (gate.depth > DEFINITIONS_DEEP_MAX) {
+    const message = `gate definitions call each other more than ${DEFINITIONS_DEEP_MAX} deep`;
+    fail(r.problems, at, 'too-deep', message);
+  }
+  gate.broken = r.problems.errors.length > before;
+  if (!gate.broken && entry) gate.sameAs = equalsEntry(r, gate, entry) ? name : null;
+}
+
+function checkBody(
+  r: Reader,
+  gate: UserGate,
+  body: readonly Statement[],
+  values: ReadonlySet<string>,
+): void {
+  for (const statement of body) {
+    try {
+      checkBodyStatement(r, gate, statement, values);
+    } catch (error) {
+      if (!(error instanceof Abandoned)) throw error;
+      gate.broken = true;
+    }
+  }
+}
+
+function checkBodyStatement(
+  r: Reader,
+  gate: UserGate,
+  statement: Statement,
+  values: ReadonlySet<string>,
+): void {
+  const { name, operands } = gate.definition;
+  if (statement.kind === 'for') {
+    checkBody(r, gate, statement.body, new Set([...values, statement.name.name]));
+    return;
+  }
+  if (statement.kind !== 'call' && statement.kind !== 'barrier') {
+    fail(
+      r.problems,
+      statement.at,
+      'not-allowed',
+      'only gates, barriers and for loops may stand in a gate body',
+    );
+  }
+  const seen = new Set<string>();
+  for (const operand of statement.operands) {
+    if (operand.indices.length > 0) {
+      const message = `${operand.name} is a single qubit of the gate: it takes no index`;
+      fail(r.problems, operand.indices[0]!.at, 'wrong-kind', message);
+    }
+    if (!operands.some((known) => known.name === operand.name)) {
+      const near = nearestWord(
+        operand.name,
+        operands.map((known) => known.name),
+      );
+      const hint = near ? `did you mean ${near}?` : undefined;
+      const message = `unknown qubit of gate ${name.name}: ${operand.name}`;
+      fail(r.problems, operand.at, 'unknown-name', message, hint);
+    }
+    if (seen.has(operand.name)) {
+      fail(r.problems, operand.at, 'duplicate-operand', 'a gate uses the same qubit twice');
+    }
+    seen.add(operand.name);
+  }
+  if (statement.kind === 'barrier') return;
+  if (statement.name.name === name.name) {
+    fail(r.problems, statement.name.at, 'recursive-gate', `gate ${name.name} must not call itself`);
+  }
+  const callee = findCallee(r, statement);
+  if (callee.kind === 'user') gate.depth = Math.max(gate.depth, 1 + callee.gate.depth);
+  checkAngleCount(r, statement, callee);
+  // numbers of controls that depend on a loop are checked when the gate is used
+  let controls = 0;
+  for (const m of statement.modifiers) {
+    if (m.kind !== 'control') continue;
+    const isOpen = m.count !== null && mentions(m.count, values);
+    controls += isOpen ? Number.NaN : m.count ? evaluateInteger(r, m.count, 'a number') : 1;
+  }
+  if (!Number.isNaN(controls)) checkWireCount(r, statement, callee, controls);
+  for (const angle of statement.angles) checkNames(r, angle, values);
+  for (const m of statement.modifiers) if (m.kind === 'power') checkNames(r, m.exponent, values);
+}
+
+/** Reports names in an expression that mean nothing. */
+function checkNames(r: Reader, node: Expression, values: ReadonlySet<string>): void {
+  for (const part of partsOf(node)) checkNames(r, part, values);
+  if (node.kind !== 'operand') return;
+  const { name } = node.operand;
+  if (values.has(name) || CONSTANTS.has(name) || lookUp(r, name)) return;
+  failUnknown(r, node.at, 'name', name);
+}
+
+function partsOf(node: Expression): Expression[] {
+  switch (node.kind) {
+    case 'unary':
+      return [node.of];
+    case 'power':
+      return [node.base, node.exponent];
+    case 'chain':
+      return [node.first, ...node.rest.map(({ of }) => of)];
+    case 'call':
+      return node.arguments;
+    default:
+      return [];
+  }
+}
+
+function mentions(node: Expression, values: ReadonlySet<string>): boolean {
+  if (node.kind === 'operand') return values.has(node.operand.name);
+  return partsOf(node).some((part) => mentions(part, values));
+}
+
+/** True for an expression that is a constant plus constant multiples of the parameters. */
+function isLinear(node: Expression, values: ReadonlySet<string>): boolean {
+  if (!mentions(node, values)) return true;
+  if (node.kind === 'operand') return true;
+  if (node.kind === 'unary') return /^[-+]$/.test(node.operator) && isLinear(node.of, values);
+  if (node.kind !== 'chain') return false;
+  const [operator] = node.rest.map((part) => part.operator);
+  if (operator === '+' || operator === '-') return partsOf(node).every((p) => isLinear(p, values));
+  if (operator !== '*' && operator !== '/') return false;
+  const dependent = partsOf(node).filter((part) => mentions(part, values));
+  const isDivisor = node.rest.some((part) => part.operator === '/' && mentions(part.of, values));
+  return dependent.length === 1 && !isDivisor && isLinear(dependent[0]!, values);
+}
+
+function equalsEntry(r: Reader, gate: UserGate, entry: GateEntry): boolean {
+  const { parameters, operands, body } = gate.definition;
+  if (parameters.length !== entry.angles || operands.length !== entry.wires) return false;
+  const values = new Set(parameters.map((p) => p.name));
+  const isSimple = body.every(
+    (s) => s.kind === 'call' && s.angles.every((angle) => isLinear(angle, values)),
+  );
+  if (!isSimple || body.length > 200) return false;
+  const wires = operands.map((_, k) => k);
+  const callee: Callee = { kind: 'user', gate, name: entry.name, wires: wires.length, angles: 0 };
+  const rounds = entry.angles === 0 ? 1 : SAMPLES.length;
+  for (let round = 0; round < rounds; round++) {
+    const angles = parameters.map((_, k) => SAMPLES[(round + 2 * k) % SAMPLES.length]! + 0.1 * k);
+    const piece = barePiece(r, gate.definition.at, callee, angles, wires);
+    if (piece.operations.length > 200) return false;
+    const matrix = pieceMatrix(piece, wires.length);
+    const target = entry.matrix(angles);
+    const isSame =
+      r.parser.dialect === '2.0'
+        ? hilbertSchmidtDistance(matrix, target).distance < 1e-20
+        : matrix.every((x, k) => Math.abs(x - target[k]!) < 1e-10);
+    if (!isSame) return false;
+  }
+  return true;
+}

@@ -1,0 +1,111 @@
+/**
+ * Collects the mistakes of one text and turns offsets into lines and columns.
+ *
+ * A mistake is reported once per place; whoever reports one then either goes on or gives up the statement
+ * (`fail`). What cannot be trusted after a mistake is marked by the callers, so that no mistake is told twice.
+ */
+import type { InputProblem } from '../input-error.ts';
+
+/** More mistakes than this are counted, not listed. */
+export const PROBLEMS_MAX = 100;
+
+/** Thrown after a report to leave the current statement; caught where statements begin. */
+export class Abandoned extends Error {}
+
+/** Thrown after a report to leave the whole text: a limit was reached and going on has no sense. */
+export class Halted extends Error {}
+
+export type Problems = {
+  file: string;
+  text: string;
+  /** Offset of the first character of each line. */
+  lineStarts: readonly number[];
+  errors: { at: number; problem: InputProblem }[];
+  warnings: InputProblem[];
+  seen: Set<string>;
+  /** Mistakes beyond the limit. */
+  unlisted: number;
+};
+
+export function problemsOf(text: string, file: string): Problems {
+  const lineStarts = [0];
+  for (let at = text.indexOf('\n'); at >= 0; at = text.indexOf('\n', at + 1)) {
+    lineStarts.push(at + 1);
+  }
+  return { file, text, lineStarts, errors: [], warnings: [], seen: new Set(), unlisted: 0 };
+}
+
+/** Line and column of an offset, both from 1. */
+export function placeOf(problems: Problems, at: number): { line: number; column: number } {
+  const { lineStarts } = problems;
+  let low = 0;
+  let high = lineStarts.length - 1;
+  while (low < high) {
+    const middle = (low + high + 1) >> 1;
+    if (lineStarts[middle]! <= at) low = middle;
+    else high = middle - 1;
+  }
+  return { line: low + 1, column: at - lineStarts[low]! + 1 };
+}
+
+export function report(
+  problems: Problems,
+  at: number,
+  code: string,
+  message: string,
+  hint?: string,
+): void {
+  const key = `${at} ${code}`;
+  if (problems.seen.has(key)) return;
+  problems.seen.add(key);
+  if (problems.errors.length >= PROBLEMS_MAX) {
+    problems.unlisted++;
+    return;
+  }
+  const place = placeOf(problems, at);
+  const problem = { code, message, file: problems.file, ...place, ...(hint ? { hint } : {}) };
+  problems.errors.push({ at, problem });
+}
+
+/** Reports a mistake and leaves the current statement. */
+export function fail(
+  problems: Problems,
+  at: number,
+  code: string,
+  message: string,
+  hint?: string,
+): never {
+  report(problems, at, code, message, hint);
+  throw new Abandoned();
+}
+
+/** Reports that a limit is reached and leaves the whole text. */
+export function halt(problems: Problems, at: number, message: string, hint?: string): never {
+  report(problems, at, 'too-large', message, hint);
+  throw new Halted();
+}
+
+export function warn(problems: Problems, at: number, code: string, message: string): void {
+  const key = `warning ${at} ${code}`;
+  if (problems.seen.has(key) || problems.warnings.length >= PROBLEMS_MAX) return;
+  problems.seen.add(key);
+  problems.warnings.push({ code, message, file: problems.file, ...placeOf(problems, at) });
+}
+
+/** All mistakes in the order of the text. */
+export function allProblems(problems: Problems): InputProblem[] {
+  const list = [...problems.errors].sort((a, b) => a.at - b.at).map(({ problem }) => problem);
+  if (problems.unlisted > 0) {
+    list.push({
+      code: 'more',
+      message: `${problems.unlisted} more mistakes are not listed`,
+      file: problems.file,
+    });
+  }
+  return list;
+}
+
+/** The offending text, quoted, cut when it is long. */
+export function quoted(text: string): string {
+  return `'${text.length > 40 ? `${text.slice(0, 37)}...` : text}'`;
+}
