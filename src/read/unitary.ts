@@ -9,7 +9,7 @@
 import { InputError } from '../input-error.ts';
 import { unitarityError } from '../numeric/complex-matrix.ts';
 import { hilbertSchmidtDistance } from '../numeric/distance.ts';
-import { polarFactor } from '../numeric/svd.ts';
+import { nearestUnitary } from '../numeric/nearest-unitary.ts';
 import type { ReadMatrix } from './matrix-market.ts';
 
 /** Eight decimal digits in a file leave about 1e-8. */
@@ -56,7 +56,7 @@ export function checkUnitary(
       'take the nearest unitary with --nearest',
     );
   }
-  const unitary = polarFactor(matrix, rows);
+  const unitary = nearestUnitary(matrix, rows);
   const { distance } = hilbertSchmidtDistance(unitary, matrix);
   const notes =
     error <= 1e-12
