@@ -377,7 +377,8 @@ add('cu3', 2, 3, {
   inverse: ([t, f, l]) => ({ name: 'cu3', angles: [-t!, -l!, -f!] }),
   ...firstControl,
   known: STD2,
-  source: 'OpenQASM 2.0 header: u1((l-f)/2) u1((l+f)/2) and two CX, which is controlled Rz Ry Rz',
+  source:
+    'OpenQASM 2.0 header of the paper: controlled Rz Ry Rz (later copies of it add a phase (f+l)/2 on the control)',
 });
 for (const [name, pauli] of [
   ['rxx', XX],
@@ -417,6 +418,7 @@ add('rccx', 3, 0, {
   matrix: () => relativePhaseToffoli(),
   monomial: true,
   selfInverse: true,
+  controlOperands: [0, 1],
   known: OWN,
   source: 'relative-phase Toffoli; Song, Klappenecker, quant-ph/0312225; later 2.0 headers',
 });

@@ -30,7 +30,7 @@ import {
   type UserGate,
   type Value,
 } from './openqasm-names.ts';
-import { Abandoned, fail, report } from './openqasm-problems.ts';
+import { Abandoned, fail, report, warn } from './openqasm-problems.ts';
 import type { Expression, GateCall, GateDefinition, Statement } from './openqasm-tree.ts';
 import { evaluateInteger, evaluateReal } from './openqasm-values.ts';
 
@@ -77,9 +77,19 @@ function findCallee(r: Reader, call: { name: { name: string; at: number } }): Ca
     r.included = true;
   }
   if (entry && isKnown) {
+    if (name === 'cu3') warnOfCu3(r, at);
     return { kind: 'table', entry, name, wires: entry.wires, angles: entry.angles };
   }
   return failUnknownGate(r, name, at, entry);
+}
+
+/** The paper's cu3 and that of later copies of the header differ by a phase on the control. */
+function warnOfCu3(r: Reader, at: number): void {
+  if (r.problems.seen.has('cu3')) return;
+  r.problems.seen.add('cu3');
+  const message =
+    'cu3 is read as in the header of the OpenQASM 2.0 paper: later copies add a phase (phi+lambda)/2 on the control';
+  warn(r.problems, at, 'two-meanings', message);
 }
 
 function failUnknownGate(r: Reader, name: string, at: number, entry?: GateEntry): never {
