@@ -152,7 +152,7 @@ export function supportOf(
 }
 
 /** Rows <v_k| (upper half of Z), then <X v_k| (lower half): the output's Paulis sit on the first bit. */
-function outputFrame(z: Float64Array, x: Float64Array, k: number): Float64Array {
+export function outputFrame(z: Float64Array, x: Float64Array, k: number): Float64Array {
   const d = 2 ** k;
   const half = d / 2;
   const { vectors } = hermitianEigen(z, d);
@@ -187,15 +187,16 @@ export function columns(a: Float64Array, d: number, from: number, to: number): F
 }
 
 /** Puts the first bit of `frame` on the carrier, and turns the others, so that the block is nearest to doing nothing. */
-function turnToIdentity(
+export function turnToIdentity(
   frame: Float64Array,
   wires: readonly number[],
   output: number,
+  placeGiven?: number,
 ): { matrix: Float64Array; place: number } {
   const k = wires.length;
   let best = { matrix: frame, place: 0, score: -1 };
   // the output's own carrier first: among equals the one that needs no relabelling
-  const places = wires.map((_, place) => place);
+  const places = placeGiven === undefined ? wires.map((_, place) => place) : [placeGiven];
   places.sort((a, b) => Number(wires[b] === output) - Number(wires[a] === output) || a - b);
   for (const place of places) {
     // bits of the row index: the leaving one to its place, the others in order
