@@ -16,6 +16,7 @@ import { applyMatrixInto } from '../circuit/unitary.ts';
 import { adjoint, identity, kron, mul } from '../numeric/complex-matrix.ts';
 import { hilbertSchmidtDistance } from '../numeric/distance.ts';
 import { hermitianEigen } from '../numeric/hermitian-eigen.ts';
+import { nearestUnitary } from '../numeric/nearest-unitary.ts';
 import {
   type ChainPlan,
   DEPENDENCE_MIN,
@@ -27,7 +28,6 @@ import {
 import {
   averageOver,
   conditionedOn,
-  nearestUnitary,
   type Residual,
   reducedPauli,
   reorderBits,

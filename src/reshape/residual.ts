@@ -13,8 +13,8 @@
  */
 import { assert } from '../assert.ts';
 import { applyMatrixInto } from '../circuit/unitary.ts';
-import { adjoint, identity, mul, mulInto, unitarityError } from '../numeric/complex-matrix.ts';
-import { polarFactor } from '../numeric/svd.ts';
+import { adjoint, identity } from '../numeric/complex-matrix.ts';
+import { nearestUnitary } from '../numeric/nearest-unitary.ts';
 
 export type Residual = {
   rows: Float64Array;
@@ -187,25 +187,6 @@ export function withoutOutput(residual: Residual, output: number, carrier: numbe
   const one = conditionedOn(residual, output, carrier, 1);
   const mean = zero.rows.map((x, k) => (x + one.rows[k]!) / 2);
   return { ...zero, rows: nearestUnitary(mean, 2 ** zero.carriers.length) };
-}
-
-/**
- * The unitary polar factor: by Newton-Schulz steps X -> X (3 - X^dag X) / 2 when the matrix is nearly unitary
- * (Higham, Functions of Matrices, section 8.3; quadratic convergence), else by singular values.
- */
-export function nearestUnitary(a: Float64Array, n: number): Float64Array {
-  let x = a;
-  for (let step = 0; step < 8; step++) {
-    const error = unitarityError(x, n);
-    if (error < 1e-15 * n) return x;
-    if (!(error < 0.3 / n) && step === 0) return polarFactor(a, n);
-    const correction = mul(adjoint(x, n), x, n);
-    for (let k = 0; k < correction.length; k++) correction[k] = -correction[k]! / 2;
-    for (let i = 0; i < n; i++) correction[i * n + i]! += 1.5;
-    x = mulInto(new Float64Array(a.length), x, correction, n, n, n);
-    if (error < 1e-8) return x;
-  }
-  return x;
 }
 
 /** The same operator with its bits in another order: new place k holds old place `from[k]`. */
