@@ -248,14 +248,14 @@ function runAlias(r: Reader, { at, name, parts }: Of<'alias'>): void {
 }
 
 function runMeasure(r: Reader, at: number, source: Operand, target: Operand | null): void {
-  const { places: wires, scalar } = resolve(r, source, 'qubits');
+  const { places: wires } = resolve(r, source, 'qubits');
   spend(r, at, wires.length);
   if (!target) {
     for (const wire of wires) emit(r, at, { kind: 'measure', wire, bit: -1 });
     return;
   }
-  const { places: bits, scalar: oneBit } = resolve(r, target, 'bits');
-  if (wires.length !== bits.length || (scalar !== oneBit && r.parser.dialect === '2.0')) {
+  const { places: bits } = resolve(r, target, 'bits');
+  if (wires.length !== bits.length) {
     const message = `expected ${wires.length} bit${wires.length === 1 ? '' : 's'} for the outcomes, got ${bits.length}`;
     fail(r.problems, target.at, 'size-mismatch', message);
   }

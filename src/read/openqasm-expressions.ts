@@ -182,7 +182,11 @@ export function parseOperand(s: Scanner, dialect: Dialect): Operand {
     const at = s.start;
     advance(s);
     if (dialect === '2.0' && !isInteger(s)) expected(s, 'an index (a whole number)');
-    operand.indices.push(parseIndex(s, dialect, at));
+    operand.indices.push(
+      dialect === '3'
+        ? parseIndex(s, dialect, at)
+        : { kind: 'one', at, value: parseExpression(s, dialect) },
+    );
     expect(s, ']', "to match '['");
     if (operand.indices.length > 16) {
       fail(s.problems, at, 'too-deep', 'more than 16 indices in a row');

@@ -7,7 +7,6 @@
  */
 import type { GateOperation } from '../circuit/circuit.ts';
 import { type GateEntry, gateTable } from '../circuit/gates.ts';
-import { nearestWord } from '../input-error.ts';
 import { hilbertSchmidtDistance } from '../numeric/distance.ts';
 import {
   controlPiece,
@@ -30,7 +29,7 @@ import {
   type UserGate,
   type Value,
 } from './openqasm-names.ts';
-import { Abandoned, fail, report, warn } from './openqasm-problems.ts';
+import { Abandoned, fail, nearName, report, warn } from './openqasm-problems.ts';
 import type { Expression, GateCall, GateDefinition, Statement } from './openqasm-tree.ts';
 import { evaluateInteger, evaluateReal } from './openqasm-values.ts';
 
@@ -113,7 +112,7 @@ function failUnknownGate(r: Reader, name: string, at: number, entry?: GateEntry)
     );
   }
   const known = [...gateTable.values()].filter((e) => e.known.includes(dialect)).map((e) => e.name);
-  const near = nearestWord(name, [...r.gates.keys(), ...known]);
+  const near = nearName(name, [...r.gates.keys(), ...known]);
   const hint = near ? `did you mean ${near}?` : undefined;
   return fail(r.problems, at, 'unknown-gate', `unknown gate: ${name}`, hint);
 }
@@ -379,7 +378,7 @@ function checkBodyStatement(
       fail(r.problems, operand.indices[0]!.at, 'wrong-kind', message);
     }
     if (!operands.some((known) => known.name === operand.name)) {
-      const near = nearestWord(
+      const near = nearName(
         operand.name,
         operands.map((known) => known.name),
       );

@@ -1,7 +1,6 @@
 /** What the names of an OpenQASM text stand for while it is read, and how operands find their wires and bits. */
 import type { BitExpression, Operation, Register } from '../circuit/circuit.ts';
-import { nearestWord } from '../input-error.ts';
-import { Abandoned, fail, halt, type Problems } from './openqasm-problems.ts';
+import { Abandoned, fail, halt, nearName, type Problems } from './openqasm-problems.ts';
 import type { Parser } from './openqasm-statements.ts';
 import type { GateDefinition, IndexPart, Named, Operand } from './openqasm-tree.ts';
 import { type evaluate, evaluateInteger } from './openqasm-values.ts';
@@ -90,7 +89,7 @@ export function failUnknown(r: Reader, at: number, what: string, name: string): 
   if (r.parser.spoilt.has(name)) throw new Abandoned();
   r.parser.spoilt.add(name);
   const known = r.scopes.flatMap((scope) => [...scope.keys()]);
-  const near = nearestWord(name, known);
+  const near = nearName(name, known);
   const hint = near ? `did you mean ${near}?` : undefined;
   return fail(r.problems, at, 'unknown-name', `unknown ${what}: ${name}`, hint);
 }

@@ -4,7 +4,7 @@
  * A mistake is reported once per place; whoever reports one then either goes on or gives up the statement
  * (`fail`). What cannot be trusted after a mistake is marked by the callers, so that no mistake is told twice.
  */
-import type { InputProblem } from '../input-error.ts';
+import { type InputProblem, nearestWord } from '../input-error.ts';
 
 /** More mistakes than this are counted, not listed. */
 export const PROBLEMS_MAX = 100;
@@ -105,7 +105,7 @@ export function allProblems(problems: Problems): InputProblem[] {
   return list;
 }
 
-/** The offending text, quoted, cut when it is long. */
-export function quoted(text: string): string {
-  return `'${text.length > 40 ? `${text.slice(0, 37)}...` : text}'`;
+/** The known name that was probably meant; names of one letter resemble everything and get no advice. */
+export function nearName(name: string, known: Iterable<string>): string | undefined {
+  return name.length > 1 ? nearestWord(name, known) : undefined;
 }

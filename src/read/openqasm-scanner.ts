@@ -244,5 +244,9 @@ export function found(s: Scanner): string {
 }
 
 function show(word: string): string {
+  const code = word.codePointAt(0) ?? 0;
+  if (code < 32 || (code >= 127 && code < 160)) {
+    return `U+${code.toString(16).toUpperCase().padStart(4, '0')}`;
+  }
   return `'${word.length > 40 ? `${word.slice(0, 37)}...` : word}'`;
 }

@@ -6,6 +6,7 @@
  * broken or refused declaration would have introduced are remembered as spoilt: using them is no second mistake.
  */
 
+import { gateTable } from '../circuit/gates.ts';
 import {
   type Dialect,
   parseExpression,
@@ -37,6 +38,8 @@ export type Parser = {
   dialect: Dialect;
   /** Names whose declaration was wrong or refused. */
   spoilt: Set<string>;
+  /** Names of the gates that the text defines. */
+  gates: Set<string>;
   /** Blocks open now. */
   blocks: number;
   inGate: boolean;
@@ -83,6 +86,9 @@ const NEVER_IN_GATE = new Set([
   'gate',
   'opaque',
 ]);
+const ONLY_3 = new Set(
+  'qubit bit const let for ctrl negctrl inv pow gphase pragma else'.split(' '),
+);
 const STARTERS = new Set([
   ...REFUSED.keys(),
   ...NEVER_IN_GATE,
@@ -102,7 +108,7 @@ const STARTERS = new Set([
 ]);
 
 export function parserOf(scanner: Scanner): Parser {
-  return { scanner, dialect: '3', spoilt: new Set(), blocks: 0, inGate: false };
+  return { scanner, dialect: '3', spoilt: new Set(), gates: new Set(), blocks: 0, inGate: false };
 }
 
 /**
@@ -227,7 +233,12 @@ function parseBare(p: Parser): Statement {
     case 'opaque':
       return parseOpaque(p, at);
     default:
-      return p.dialect === '3' ? parseBare3(p, at, word) : parseCall(p, at, []);
+      if (p.dialect === '3') return parseBare3(p, at, word);
+      if ((REFUSED.has(word) || ONLY_3.has(word)) && !p.gates.has(word)) {
+        const message = `${word} belongs to OpenQASM 3, but the text says version 2.0`;
+        fail(s.problems, at, 'not-supported', message);
+      }
+      return parseCall(p, at, []);
   }
 }
 
@@ -263,7 +274,8 @@ function parseBare3(p: Parser, at: number, word: string): Statement {
 /** The `;`. When it is missing but the next statement plainly begins, the statement counts all the same. */
 function endStatement(s: Scanner): void {
   if (accept(s, ';')) return;
-  const begins = s.kind === 'name' && (s.firstOnLine || /[\])]$/.test(s.previousWord));
+  const starts = s.firstOnLine || STARTERS.has(s.word) || gateTable.has(s.word);
+  const begins = s.kind === 'name' && starts;
   if (!(s.kind === 'end' || begins || stands(s, '}') || (s.firstOnLine && stands(s, '@')))) {
     expect(s, ';', 'to end the statement');
   }
@@ -308,7 +320,7 @@ function parseOldRegister(p: Parser, at: number, word: 'qreg' | 'creg'): Stateme
   advance(s);
   const name = parseNamed(s, 'a name for the register');
   let size: Expression | null = null;
-  if (p.dialect === '2.0') expect(s, '[', 'before the size of the register');
+  if (p.dialect === '2.0') expect(s, '[', 'to begin the size');
   if (p.dialect === '2.0' || accept(s, '[')) {
     size = parseExpression(s, p.dialect);
     expect(s, ']', "to match '['");
@@ -386,6 +398,7 @@ function parseGate(p: Parser, at: number): Statement {
   const s = p.scanner;
   advance(s);
   const name = parseNamed(s, 'a name for the gate');
+  p.gates.add(name.name);
   const parameters: Named[] = [];
   if (accept(s, '(')) {
     while (!accept(s, ')')) {
@@ -468,9 +481,9 @@ function parseBarrier(p: Parser, at: number): Statement {
 function parseIf(p: Parser, at: number): Statement {
   const s = p.scanner;
   advance(s);
-  expect(s, '(', 'before the condition');
+  expect(s, '(', 'to begin the condition');
   const condition = p.dialect === '3' ? parseExpression(s, '3') : parseOldCondition(p);
-  expect(s, ')', 'after the condition');
+  expect(s, ')', 'to end the condition');
   const then = p.dialect === '3' ? parseBody(p, 'the body of if') : [parseStatement(p)];
   let otherwise: Statement[] = [];
   if (p.dialect === '3' && accept(s, 'else')) otherwise = parseBody(p, 'the body of else');
@@ -496,6 +509,7 @@ function parseOpaque(p: Parser, at: number): Statement {
   }
   advance(s);
   const name = parseNamed(s, 'a name for the gate');
+  p.gates.add(name.name);
   while (s.kind !== 'end' && !stands(s, ';') && !s.firstOnLine) advance(s);
   endStatement(s);
   return { kind: 'opaque', at, name };
@@ -505,6 +519,16 @@ function parseFor(p: Parser, at: number): Statement {
   const s = p.scanner;
   advance(s);
   const type = expectName(s, 'the type of the loop variable');
+  if (stands(s, 'in')) {
+    const hint = `write for int ${type} in ...`;
+    fail(
+      s.problems,
+      s.previousEnd - type.length,
+      'unexpected',
+      `expected a type, got '${type}'`,
+      hint,
+    );
+  }
   if (type !== 'int' && type !== 'uint') {
     const hint = 'write for int i in [0:3] { ... }';
     const start = s.previousEnd - type.length;
@@ -533,7 +557,7 @@ function parseModifiers(p: Parser): Modifier[] {
     advance(s);
     if (word === 'inv') modifiers.push({ kind: 'inverse', at });
     else if (word === 'pow') {
-      expect(s, '(', 'before the exponent');
+      expect(s, '(', 'to begin the exponent');
       const exponent = parseExpression(s, p.dialect);
       expect(s, ')', "to match '('");
       modifiers.push({ kind: 'power', at, exponent });
@@ -545,7 +569,7 @@ function parseModifiers(p: Parser): Modifier[] {
       }
       modifiers.push({ kind: 'control', at, positive: word === 'ctrl', count });
     }
-    expect(s, '@', 'after the modifier');
+    expect(s, '@', 'to end the modifier');
     if (modifiers.length > MODIFIERS_MAX) {
       fail(s.problems, at, 'too-deep', `more than ${MODIFIERS_MAX} modifiers in one call`);
     }

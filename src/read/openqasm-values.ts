@@ -7,7 +7,6 @@
  * power in 2.0. Registers compare as unsigned numbers, bit 0 least significant.
  */
 import type { BitExpression } from '../circuit/circuit.ts';
-import { nearestWord } from '../input-error.ts';
 import {
   allOf,
   anyOf,
@@ -26,7 +25,7 @@ import {
   spend,
   type Value,
 } from './openqasm-names.ts';
-import { fail, warn } from './openqasm-problems.ts';
+import { fail, nearName, warn } from './openqasm-problems.ts';
 import type { Expression } from './openqasm-tree.ts';
 
 type Chain = Extract<Expression, { kind: 'chain' }>;
@@ -363,7 +362,7 @@ function evaluateCall(r: Reader, node: Extract<Expression, { kind: 'call' }>): V
     return convert(r, name, evaluate(r, node.arguments[0]!), at, true);
   }
   const known = [...(isNew ? FUNCTIONS_3 : FUNCTIONS_2).keys(), ...(isNew ? ['pow', 'mod'] : [])];
-  const near = nearestWord(name, known);
+  const near = nearName(name, known);
   if (r.parser.spoilt.has(name)) return failUnknown(r, at, 'function', name);
   const hint = near ? `did you mean ${near}?` : `known are ${known.join(', ')}`;
   return fail(r.problems, at, 'unknown-function', `unknown function: ${name}`, hint);

@@ -14,7 +14,7 @@ import type { Circuit } from '../circuit/circuit.ts';
 import { InputError, type InputProblem } from '../input-error.ts';
 import { execute } from './openqasm-expand.ts';
 import type { Reader } from './openqasm-names.ts';
-import { Abandoned, allProblems, Halted, problemsOf, warn } from './openqasm-problems.ts';
+import { Abandoned, allProblems, Halted, problemsOf, report, warn } from './openqasm-problems.ts';
 import { scannerOf } from './openqasm-scanner.ts';
 import { nextStatement, parserOf } from './openqasm-statements.ts';
 
@@ -84,7 +84,7 @@ function readAll(r: Reader): void {
   let isFirst = true;
   for (;;) {
     const statement = nextStatement(r.parser);
-    if (statement === undefined) return;
+    if (statement === undefined) break;
     if (isFirst && statement?.kind !== 'version') {
       const message = 'no version line: read as OpenQASM 3';
       warn(r.problems, 0, 'no-version', message);
@@ -92,5 +92,11 @@ function readAll(r: Reader): void {
     if (statement?.kind === 'version' && !isFirst) r.hasVersion = true;
     isFirst = false;
     if (statement) execute(r, statement);
+  }
+  if (r.wires === 0 && r.problems.errors.length === 0) {
+    const message = isFirst
+      ? 'expected OpenQASM, got an empty text'
+      : 'missing qubits: none is declared';
+    report(r.problems, r.parser.scanner.previousEnd, 'no-qubits', message);
   }
 }
