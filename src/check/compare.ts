@@ -1,0 +1,140 @@
+/**
+ * Answers whether two circuits do the same under a contract, how far they are apart, and on which input that shows.
+ *
+ * Road: dense. Both circuits are unfolded (`unfold.ts`) and reduced to what an observer sees (`observed.ts`): the
+ * kept outputs as qubits, the bits of the original and the outputs declared measured as bits, everything else traced
+ * out. The distance is that of `channel-distance.ts`; it is a proof up to its error bar.
+ * Matching: wires by number, or by the annotations of a narrowed circuit; bits by name, else by position. Extra wires of
+ * the rewritten circuit start in |0> and are dropped.
+ * Fails: InputError for circuits that cannot be matched; verdict `undecided` when they are too large.
+ */
+import type { Circuit } from '../circuit/circuit.ts';
+import { contractOf, isProgram } from '../circuit/contract.ts';
+import { type Contract, type ContractOptions, contractName } from '../contract.ts';
+import { InputError } from '../input-error.ts';
+import { distanceAngle, processInfidelity } from '../numeric/distance.ts';
+import type { CompareReport } from '../reports.ts';
+import { channelDistance } from './channel-distance.ts';
+import { type Observation, observation } from './observation.ts';
+import { type Observed, observe } from './observed.ts';
+import { findRelabelling } from './relabel.ts';
+import { isAnnotated, type Unfolded, unfold } from './unfold.ts';
+import { findWitness } from './witness.ts';
+import { WORST_CASE_ROWS_MAX, worstCaseDistance } from './worst-case.ts';
+
+export type CompareOptions = {
+  contract?: ContractOptions;
+  /** On the distance D; default 1e-10. */
+  tolerance?: number;
+  /** Allow any permutation of the outputs. */
+  relabel?: boolean;
+  seed?: number;
+};
+
+export const COMPARE_TOLERANCE = 1e-10;
+
+export function compareCircuits(
+  original: Circuit,
+  rewritten: Circuit,
+  {
+    contract: asked = {},
+    tolerance = COMPARE_TOLERANCE,
+    relabel = false,
+    seed = 1,
+  }: CompareOptions = {},
+): CompareReport & { unfoldedWires: number } {
+  const contract = contractOf(original, asked);
+  const head = {
+    schema: 'wiregauge/compare@1',
+    seed,
+    contract: contractName(contract),
+    contractFromFile: contract.decidedBy === 'file',
+    seconds: 0,
+    original: original.name,
+    rewritten: rewritten.name,
+  } as const;
+  checkWires(original, rewritten, contract);
+  let a: Unfolded;
+  let b: Unfolded;
+  try {
+    a = unfold(original, contract);
+    b = unfold(rewritten, contract);
+  } catch (error) {
+    if (!(error instanceof InputError) || error.code !== 'too-large') throw error;
+    return {
+      ...head,
+      verdict: 'undecided',
+      distance: null,
+      phase: null,
+      method: 'none',
+      proof: false,
+      witness: null,
+      relabelling: null,
+      notes: [error.problems[0]!.message],
+      unfoldedWires: 0,
+    };
+  }
+  const plan = observation(original, rewritten, contract);
+  const left = observe(a, plan.of(a, 'original'), original.name);
+  const relabelling = relabel ? findRelabelling(a, b, plan, left, rewritten.name, seed) : null;
+  const right = observe(b, plan.of(b, 'rewritten', relabelling), rewritten.name);
+  const gates = original.operations.length + rewritten.operations.length;
+  const { hilbertSchmidt, phase, errorBar } = channelDistance(left, right, gates);
+  const isSame = hilbertSchmidt <= tolerance;
+  const notes: string[] = [];
+  if (isSame && hilbertSchmidt > 100 * errorBar) {
+    notes.push('the difference is above rounding, but within the tolerance');
+  }
+  const worstCase = worstCaseOf(left, right, plan, notes);
+  const witness = isSame ? null : findWitness(left, right, plan.names, seed);
+  return {
+    ...head,
+    verdict: isSame ? 'same' : 'different',
+    distance: {
+      hilbertSchmidt,
+      processInfidelity: processInfidelity(hilbertSchmidt),
+      worstCase,
+      angle: distanceAngle(hilbertSchmidt),
+      errorBar,
+    },
+    phase,
+    method: 'dense',
+    proof: true,
+    witness,
+    relabelling,
+    notes,
+    unfoldedWires: b.unfoldedWires,
+  };
+}
+
+function checkWires(original: Circuit, rewritten: Circuit, contract: Contract): void {
+  if (isAnnotated(rewritten) || rewritten.wires >= original.wires) return;
+  const needed =
+    contract.inputs.some((rule) => rule === 'any') || contract.outputs.includes('kept');
+  if (!needed && isProgram(rewritten)) return;
+  throw new InputError({
+    code: 'fewer-wires',
+    message: `expected ${original.wires} wires, or annotations that say which qubit enters and leaves where, got ${rewritten.wires} wires`,
+    file: rewritten.name,
+    hint: 'write @wiregauge.enters k before a reset and @wiregauge.leaves k before a measurement',
+  });
+}
+
+function worstCaseOf(
+  left: Observed,
+  right: Observed,
+  { names }: Observation,
+  notes: string[],
+): number | null {
+  const [a] = left.outcomes.values();
+  const [b] = right.outcomes.values();
+  const d = 2 ** names.inputs.length;
+  const isUnitary =
+    names.bits.length === 0 && names.outputs.length === names.inputs.length && !names.hasZeroInputs;
+  if (!isUnitary || a?.columns !== 1 || b?.columns !== 1) return null;
+  if (d > WORST_CASE_ROWS_MAX) {
+    notes.push(`the worst case is computed up to ${Math.log2(WORST_CASE_ROWS_MAX)} wires only`);
+    return null;
+  }
+  return worstCaseDistance(a.matrix, b.matrix, d);
+}

@@ -1,0 +1,95 @@
+/**
+ * Says what is looked at when two circuits are compared: inputs and outputs by the wires of the original, its bits,
+ * and where each of them is in the other circuit.
+ */
+import { type BitExpression, bitName, type Circuit, wireName } from '../circuit/circuit.ts';
+import type { Contract } from '../contract.ts';
+import { InputError } from '../input-error.ts';
+import type { Unfolded } from './unfold.ts';
+
+/** What is observed of both circuits, in the terms of the original. */
+export type Observation = {
+  names: { inputs: string[]; outputs: string[]; bits: string[]; hasZeroInputs: boolean };
+  kept: readonly number[];
+  of(
+    unfolded: Unfolded,
+    side: 'original' | 'rewritten',
+    relabelling?: readonly number[] | null,
+  ): { keptAxes: number[]; bits: BitExpression[]; anyInputs: number[] };
+};
+
+/** Matches the two circuits' wires and bits under the contract. */
+export function observation(
+  original: Circuit,
+  rewritten: Circuit,
+  contract: Contract,
+): Observation {
+  const wires = contract.inputs.map((_, wire) => wire);
+  const anyInputs = wires.filter((wire) => contract.inputs[wire] === 'any');
+  const kept = wires.filter((wire) => contract.outputs[wire] === 'kept');
+  const intoBits = measuredWires(original);
+  const virtual = wires.filter(
+    (wire) => contract.outputs[wire] === 'measured' && !intoBits.has(wire),
+  );
+  const partner = matchBits(original, rewritten);
+  const names = {
+    inputs: anyInputs.map((wire) => wireName(original, wire)),
+    outputs: kept.map((wire) => wireName(original, wire)),
+    bits: [
+      ...Array.from({ length: original.bits }, (_, bit) => bitName(original, bit)),
+      ...virtual.map((wire) => wireName(original, wire)),
+    ],
+    hasZeroInputs: anyInputs.length < wires.length,
+  };
+  return {
+    names,
+    kept,
+    of: (unfolded, side, relabelling) => {
+      const place = (wire: number): number => unfolded.outputAxis[relabelling?.[wire] ?? wire]!;
+      const own = Array.from({ length: original.bits }, (_, bit) =>
+        side === 'original' ? unfolded.bits[bit]! : unfolded.bits[partner[bit]!]!,
+      );
+      const missing = virtual.find((wire) => place(wire) < 0);
+      if (missing !== undefined) {
+        throw new InputError({
+          code: 'missing-output',
+          message: `missing output ${wireName(original, missing)} in the rewritten circuit`,
+          file: rewritten.name,
+        });
+      }
+      const extra = virtual.map((wire): BitExpression => ({ kind: 'bit', bit: place(wire) }));
+      return { keptAxes: kept.map(place), bits: [...own, ...extra], anyInputs };
+    },
+  };
+}
+
+/** Wires whose last operation is a measurement into a bit. */
+function measuredWires(circuit: Circuit): Set<number> {
+  const found = new Set<number>();
+  for (const operation of circuit.operations) {
+    if (operation.kind === 'measure' && operation.bit >= 0) found.add(operation.wire);
+    else if (operation.kind === 'measure' || operation.kind === 'reset')
+      found.delete(operation.wire);
+    else if (operation.kind === 'gate') for (const wire of operation.wires) found.delete(wire);
+  }
+  return found;
+}
+
+/** For every bit of the original the bit of the rewritten circuit: of the same name, else of the same number. */
+function matchBits(original: Circuit, rewritten: Circuit): number[] {
+  const byName = new Map<string, number>();
+  for (let bit = 0; bit < rewritten.bits; bit++) byName.set(bitName(rewritten, bit), bit);
+  const names = Array.from({ length: original.bits }, (_, bit) => bitName(original, bit));
+  const isByName = names.some((name) => byName.has(name));
+  return names.map((name, bit) => {
+    const found = isByName ? byName.get(name) : bit < rewritten.bits ? bit : undefined;
+    if (found === undefined) {
+      throw new InputError({
+        code: 'missing-bit',
+        message: `missing bit ${name} of the original in the rewritten circuit`,
+        file: rewritten.name,
+      });
+    }
+    return found;
+  });
+}
