@@ -315,7 +315,7 @@ function runAssign(
   });
   if (clashes) {
     values = values.map((part): BitExpression => {
-      const bit = holdBit(r);
+      const bit = holdBit(r, at);
       emit(r, at, { kind: 'assign', bit, value: part });
       return { kind: 'bit', bit };
     });
@@ -365,7 +365,7 @@ function runIf(r: Reader, { at, condition: node, then, otherwise }: Of<'if'>): v
   const read = new Set(bitsOf(condition));
   const changes = all.some((operation, k) => k < all.length - 1 && read.has(bitWritten(operation)));
   if (changes) {
-    const bit = holdBit(r);
+    const bit = holdBit(r, at);
     emit(r, at, { kind: 'assign', bit, value: condition });
     condition = { kind: 'bit', bit };
   }

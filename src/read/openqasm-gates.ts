@@ -29,7 +29,7 @@ import {
   type UserGate,
   type Value,
 } from './openqasm-names.ts';
-import { Abandoned, fail, nearName, report, warn } from './openqasm-problems.ts';
+import { Abandoned, abandon, fail, nearName, report, warn } from './openqasm-problems.ts';
 import type { Expression, GateCall, GateDefinition, Statement } from './openqasm-tree.ts';
 import { evaluateInteger, evaluateReal } from './openqasm-values.ts';
 
@@ -51,7 +51,7 @@ function findCallee(r: Reader, call: { name: { name: string; at: number } }): Ca
   const { name, at } = call.name;
   const user = r.gates.get(name);
   if (user) {
-    if (user.broken) throw new Abandoned();
+    if (user.broken) abandon();
     const { operands, parameters } = user.definition;
     const entry = user.sameAs ? gateTable.get(user.sameAs) : undefined;
     const counts = { name, wires: operands.length, angles: parameters.length };
@@ -59,7 +59,7 @@ function findCallee(r: Reader, call: { name: { name: string; at: number } }): Ca
   }
   const { dialect, spoilt } = r.parser;
   if (name === 'gphase' && dialect === '3') return { kind: 'phase', name, wires: 0, angles: 1 };
-  if (spoilt.has(name)) throw new Abandoned();
+  if (spoilt.has(name)) abandon();
   const entry = gateTable.get(name);
   const isKnown = entry?.known.includes(dialect);
   const isBuiltIn = name === 'U' || (name === 'CX' && dialect === '2.0');

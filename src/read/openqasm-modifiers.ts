@@ -31,7 +31,11 @@ export function controlPiece(
   wire: number,
   positive: boolean,
 ): Piece {
-  spend(r, at, piece.operations.length);
+  spend(
+    r,
+    at,
+    piece.operations.reduce((sum, { wires }) => sum + 1 + wires.length, 0),
+  );
   const operations = piece.operations.map((operation) =>
     operation.kind === 'barrier'
       ? operation

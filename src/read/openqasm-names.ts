@@ -1,6 +1,6 @@
 /** What the names of an OpenQASM text stand for while it is read, and how operands find their wires and bits. */
 import type { BitExpression, Operation, Register } from '../circuit/circuit.ts';
-import { Abandoned, fail, halt, nearName, type Problems } from './openqasm-problems.ts';
+import { abandon, fail, halt, nearName, type Problems } from './openqasm-problems.ts';
 import type { Parser } from './openqasm-statements.ts';
 import type { GateDefinition, IndexPart, Named, Operand } from './openqasm-tree.ts';
 import { type evaluate, evaluateInteger } from './openqasm-values.ts';
@@ -8,9 +8,9 @@ import { type evaluate, evaluateInteger } from './openqasm-values.ts';
 /** Limits, stated in the documentation of `readCircuit`. */
 export const WIRES_MAX = 10_000;
 export const BITS_MAX = 100_000;
-/** Statements executed, operations made and their operands, all together. */
-export const WORK_MAX = 4_000_000;
-export const OPERATIONS_MAX = 1_000_000;
+/** Statements executed, operations made, their operands and the bits they read, all together. */
+export const WORK_MAX = 2_500_000;
+export const OPERATIONS_MAX = 500_000;
 export const ITERATIONS_MAX = 1_000_000;
 
 export type Value =
@@ -86,7 +86,7 @@ export function lookUp(r: Reader, name: string): Meaning | undefined {
 
 /** Reports an unknown name once and remembers it as spoilt. */
 export function failUnknown(r: Reader, at: number, what: string, name: string): never {
-  if (r.parser.spoilt.has(name)) throw new Abandoned();
+  if (r.parser.spoilt.has(name)) abandon();
   r.parser.spoilt.add(name);
   const known = r.scopes.flatMap((scope) => [...scope.keys()]);
   const near = nearName(name, known);
@@ -192,7 +192,8 @@ export function* loopValues(r: Reader, part: IndexPart): Generator<number> {
 }
 
 /** A hidden bit that keeps a value while the bits it came from are overwritten. */
-export function holdBit(r: Reader): number {
+export function holdBit(r: Reader, at: number): number {
+  if (r.bits >= BITS_MAX) halt(r.problems, at, `${r.bits + 1} bits: ${BITS_MAX} is the limit here`);
   let name: string;
   do name = `held_${r.heldBits++}`;
   while (lookUp(r, name));

@@ -9,11 +9,23 @@ import { type InputProblem, nearestWord } from '../input-error.ts';
 /** More mistakes than this are counted, not listed. */
 export const PROBLEMS_MAX = 100;
 
+/** After that many the text is no longer looked at. */
+const MISTAKES_MAX = 10_000;
+
 /** Thrown after a report to leave the current statement; caught where statements begin. */
 export class Abandoned extends Error {}
 
 /** Thrown after a report to leave the whole text: a limit was reached and going on has no sense. */
 export class Halted extends Error {}
+
+// one of each for all time: a stack trace for every mistake of a long text would be slow, and nobody reads it
+const ABANDONED = new Abandoned();
+const HALTED = new Halted();
+
+/** Leaves the current statement without a word: its mistake was told elsewhere. */
+export function abandon(): never {
+  throw ABANDONED;
+}
 
 export type Problems = {
   file: string;
@@ -57,9 +69,9 @@ export function report(
 ): void {
   const key = `${at} ${code}`;
   if (problems.seen.has(key)) return;
-  problems.seen.add(key);
+  if (problems.errors.length < PROBLEMS_MAX) problems.seen.add(key);
   if (problems.errors.length >= PROBLEMS_MAX) {
-    problems.unlisted++;
+    if (++problems.unlisted >= MISTAKES_MAX) throw HALTED;
     return;
   }
   const place = placeOf(problems, at);
@@ -76,13 +88,13 @@ export function fail(
   hint?: string,
 ): never {
   report(problems, at, code, message, hint);
-  throw new Abandoned();
+  throw ABANDONED;
 }
 
 /** Reports that a limit is reached and leaves the whole text. */
 export function halt(problems: Problems, at: number, message: string, hint?: string): never {
   report(problems, at, 'too-large', message, hint);
-  throw new Halted();
+  throw HALTED;
 }
 
 export function warn(problems: Problems, at: number, code: string, message: string): void {
@@ -98,7 +110,10 @@ export function allProblems(problems: Problems): InputProblem[] {
   if (problems.unlisted > 0) {
     list.push({
       code: 'more',
-      message: `${problems.unlisted} more mistakes are not listed`,
+      message:
+        problems.unlisted < MISTAKES_MAX
+          ? `${problems.unlisted} more mistakes are not listed`
+          : `at least ${MISTAKES_MAX} more mistakes are not listed`,
       file: problems.file,
     });
   }

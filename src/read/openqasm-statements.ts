@@ -14,7 +14,7 @@ import {
   parseOperand,
   parseSet,
 } from './openqasm-expressions.ts';
-import { Abandoned, fail, Halted, placeOf, report } from './openqasm-problems.ts';
+import { Abandoned, abandon, fail, Halted, placeOf, report } from './openqasm-problems.ts';
 import {
   accept,
   advance,
@@ -585,7 +585,7 @@ function parseCall(p: Parser, at: number, modifiers: Modifier[]): Statement {
 
 function finishCall(p: Parser, at: number, modifiers: Modifier[], name: Named): Statement {
   const s = p.scanner;
-  if (p.spoilt.has(name.name)) throw new Abandoned(); // told where it was declared
+  if (p.spoilt.has(name.name)) abandon(); // told where it was declared
   const angles: Expression[] = [];
   if (accept(s, '(')) {
     while (!accept(s, ')')) {

@@ -71,6 +71,7 @@ function evaluateName(r: Reader, node: Extract<Expression, { kind: 'operand' }>)
   if (known?.kind === 'value' && operand.indices.length === 0) return known.value;
   if (known?.kind === 'bits') {
     const { places, scalar } = resolve(r, operand, 'bits');
+    spend(r, node.at, places.length);
     return { kind: 'bits', bits: places.map((bit) => ({ kind: 'bit', bit })), scalar };
   }
   if (known) {

@@ -24,36 +24,36 @@ function mistakesOf(text: string): string[] {
 // nothing is told that only follows from another mistake
 const TEXTS: readonly (readonly [string, readonly string[]])[] = [
   [
-    HEAD + 'qubit[2] q;\nh q[0]\ncx q[0], q[1];',
+    `${HEAD}qubit[2] q;\nh q[0]\ncx q[0], q[1];`,
     ["4:7 expected ';' to end the statement after ']', got 'cx'"],
   ],
   [
-    HEAD + 'qubit[2] q;\ncx q[0] q[1];\nh q[0];',
+    `${HEAD}qubit[2] q;\ncx q[0] q[1];\nh q[0];`,
     ["4:8 expected ';' to end the statement after ']', got 'q'"],
   ],
-  [HEAD + 'qubit[2] q;\ncxx q[0], q[1];', ['4:1 unknown gate: cxx (did you mean cx?)']],
-  [HEAD + 'qubit[2] q;\nh r[0];', ['4:3 unknown qubit register: r']],
+  [`${HEAD}qubit[2] q;\ncxx q[0], q[1];`, ['4:1 unknown gate: cxx (did you mean cx?)']],
+  [`${HEAD}qubit[2] q;\nh r[0];`, ['4:3 unknown qubit register: r']],
   [
-    HEAD + 'qubit[2] q;\nh q[2];\nh q[-3];',
+    `${HEAD}qubit[2] q;\nh q[2];\nh q[-3];`,
     ['4:5 index of q must be in [-2, 1], got 2', '5:5 index of q must be in [-2, 1], got -3'],
   ],
-  [HEAD + 'qubit[2] q;\ncx q[1], q[1];', ['4:10 gate cx uses the same qubit twice']],
-  [HEAD + 'qubit[2] q;\nqubit[3] q;', ['4:10 already declared: q']],
+  [`${HEAD}qubit[2] q;\ncx q[1], q[1];`, ['4:10 gate cx uses the same qubit twice']],
+  [`${HEAD}qubit[2] q;\nqubit[3] q;`, ['4:10 already declared: q']],
   [
-    HEAD + 'qubit[2] q;\nrx q[0];\nrx(1, 2) q[0];',
+    `${HEAD}qubit[2] q;\nrx q[0];\nrx(1, 2) q[0];`,
     ['4:1 gate rx takes 1 angle, got 0', '5:1 gate rx takes 1 angle, got 2'],
   ],
-  [HEAD + 'qubit[2] q;\nccx q[0], q[1];', ['4:1 gate ccx takes 3 qubits, got 2']],
+  [`${HEAD}qubit[2] q;\nccx q[0], q[1];`, ['4:1 gate ccx takes 3 qubits, got 2']],
   [
-    HEAD + 'qubit[2] a; qubit[3] b;\ncx a, b;',
+    `${HEAD}qubit[2] a; qubit[3] b;\ncx a, b;`,
     ['4:7 expected registers of one length, got 2 and 3 qubits'],
   ],
   [
-    HEAD + 'qubit[2] q; bit[3] c;\nc = measure q;\nmeasure q -> c;',
+    `${HEAD}qubit[2] q; bit[3] c;\nc = measure q;\nmeasure q -> c;`,
     ['4:1 expected 2 bits for the outcomes, got 3', '5:14 expected 2 bits for the outcomes, got 3'],
   ],
   [
-    HEAD + 'qubit[2] q;\nrx(pi/0) q[0];\nrx(log(0)) q[0];\nrx(sqrt(-1)) q[0];\nrx(10**400) q[0];',
+    `${HEAD}qubit[2] q;\nrx(pi/0) q[0];\nrx(log(0)) q[0];\nrx(sqrt(-1)) q[0];\nrx(10**400) q[0];`,
     [
       '4:6 division by zero',
       '5:4 expected a finite number, got -Infinity',
@@ -61,40 +61,40 @@ const TEXTS: readonly (readonly [string, readonly string[]])[] = [
       '7:4 expected a finite number, got Infinity',
     ],
   ],
-  [HEAD + 'qubit[2] q;\nrx(pii/2) q[0];', ['4:4 unknown name: pii']],
-  [HEAD + 'qubit[2] q;\nrx(sine(1)) q[0];', ['4:4 unknown function: sine (did you mean sin?)']],
-  [HEAD + 'gate g a { h b; }\nqubit q;\ng q;', ['3:14 unknown qubit of gate g: b']],
-  [HEAD + 'gate g a { g a; }\n', ['3:12 gate g must not call itself']],
+  [`${HEAD}qubit[2] q;\nrx(pii/2) q[0];`, ['4:4 unknown name: pii']],
+  [`${HEAD}qubit[2] q;\nrx(sine(1)) q[0];`, ['4:4 unknown function: sine (did you mean sin?)']],
+  [`${HEAD}gate g a { h b; }\nqubit q;\ng q;`, ['3:14 unknown qubit of gate g: b']],
+  [`${HEAD}gate g a { g a; }\n`, ['3:12 gate g must not call itself']],
   [
-    HEAD + 'gate g a, b { cx a, a; }\ngate f(t) a { rx(u) a; }\n',
+    `${HEAD}gate g a, b { cx a, a; }\ngate f(t) a { rx(u) a; }\n`,
     ['3:21 a gate uses the same qubit twice', '4:18 unknown name: u'],
   ],
   [
-    HEAD + 'gate g a {\n  h a;\nqubit q;\nh q;',
+    `${HEAD}gate g a {\n  h a;\nqubit q;\nh q;`,
     ["4:7 expected '}' to end the body of gate g, which begins in line 3, got 'qubit'"],
   ],
   [
-    HEAD + 'qubit q; bit c;\nif (c { x q; }',
+    `${HEAD}qubit q; bit c;\nif (c { x q; }`,
     ["4:6 expected ')' to end the condition after 'c', got '{'"],
   ],
-  [HEAD + 'qubit q; bit c;\nif (c == ) x q;', ["4:9 expected an expression, got ')'"]],
+  [`${HEAD}qubit q; bit c;\nif (c == ) x q;`, ["4:9 expected an expression, got ')'"]],
   [
-    HEAD + 'qubit q; bit c;\nif (q) x q;\nc = q;',
+    `${HEAD}qubit q; bit c;\nif (q) x q;\nc = q;`,
     [
       '4:5 expected a value, got q, which is a qubit register',
       '5:5 expected a value, got q, which is a qubit register',
     ],
   ],
   [
-    HEAD + 'qubit q;\nx q;\n/* never ended',
+    `${HEAD}qubit q;\nx q;\n/* never ended`,
     ["5:1 missing '*/' to end the comment that begins here"],
   ],
   [
-    HEAD + 'qubit q;\nx q;\ninclude "other.inc;\nx q;',
+    `${HEAD}qubit q;\nx q;\ninclude "other.inc;\nx q;`,
     ['5:9 missing " to end the text that begins here'],
   ],
   [
-    HEAD + 'include "other.inc";\nqubit q;',
+    `${HEAD}include "other.inc";\nqubit q;`,
     ['3:1 including other.inc is not supported (only "stdgates.inc" is known here)'],
   ],
   ['OPENQASM 4.0;\nqubit q;', ['1:10 expected version 2.0, 3.0 or 3.1, got 4.0']],
@@ -106,11 +106,11 @@ const TEXTS: readonly (readonly [string, readonly string[]])[] = [
     ],
   ],
   [
-    HEAD + 'qubit q;\nx q;;\n§ q;\nx q;',
+    `${HEAD}qubit q;\nx q;;\n§ q;\nx q;`,
     ["4:5 expected a statement, got ';'", "5:1 unknown character: '§'"],
   ],
   [
-    HEAD + 'qubit[0] q;\nqubit[-1] r;\nqubit[1.5] s;\nqubit[100000] t;',
+    `${HEAD}qubit[0] q;\nqubit[-1] r;\nqubit[1.5] s;\nqubit[100000] t;`,
     [
       '3:7 the size of a register must be >= 1, got 0',
       '4:7 the size of a register must be >= 1, got -1',
@@ -119,11 +119,11 @@ const TEXTS: readonly (readonly [string, readonly string[]])[] = [
     ],
   ],
   [
-    HEAD + 'qubit[3] q;\nfor int i in [0:3] { h q[i]; }',
+    `${HEAD}qubit[3] q;\nfor int i in [0:3] { h q[i]; }`,
     ['4:26 index of q must be in [-3, 2], got 3'],
   ],
   [
-    HEAD + 'qubit[3] q;\nfor float i in [0:3] { h q[i]; }\nfor i in [0:3] h q[i];',
+    `${HEAD}qubit[3] q;\nfor float i in [0:3] { h q[i]; }\nfor i in [0:3] h q[i];`,
     [
       '4:5 loops over float are not supported (write for int i in [0:3] { ... })',
       "5:5 expected a type, got 'i' (write for int i in ...)",
@@ -151,7 +151,7 @@ const TEXTS: readonly (readonly [string, readonly string[]])[] = [
     ],
   ],
   [
-    HEAD + 'qubit q;\nh $0;\nrx(2im) q;\nrx(3ns) q;',
+    `${HEAD}qubit q;\nh $0;\nrx(2im) q;\nrx(3ns) q;`,
     [
       '4:3 physical qubits ($0) are not supported (declare a register: qubit[n] q;)',
       '5:4 complex numbers are not supported here',
@@ -169,11 +169,11 @@ const TEXTS: readonly (readonly [string, readonly string[]])[] = [
     ],
   ],
   [
-    HEAD + 'qubit[2] q;\nlet a = q[0:5];\nh a;\nlet b = r;\nh b;',
+    `${HEAD}qubit[2] q;\nlet a = q[0:5];\nh a;\nlet b = r;\nh b;`,
     ['4:13 index of q must be in [-2, 1], got 5', '6:9 unknown qubit register: r'],
   ],
   [
-    HEAD + 'const int n = 2.5;\nconst uint m = -1;\nconst qubit z = 1;\nconst int k = k;',
+    `${HEAD}const int n = 2.5;\nconst uint m = -1;\nconst qubit z = 1;\nconst int k = k;`,
     [
       '3:15 expected an integer, got 2.5',
       '4:16 expected an integer >= 0, got -1',
@@ -181,22 +181,22 @@ const TEXTS: readonly (readonly [string, readonly string[]])[] = [
       '6:15 unknown name: k',
     ],
   ],
-  [HEAD + 'qubit[2] q;\nx q[0;\nx q[1];', ["4:6 expected ']' to match '[' after '0', got ';'"]],
+  [`${HEAD}qubit[2] q;\nx q[0;\nx q[1];`, ["4:6 expected ']' to match '[' after '0', got ';'"]],
   [
-    HEAD + 'qubit[2] q;\nx q[0]];\nx q[1];',
+    `${HEAD}qubit[2] q;\nx q[0]];\nx q[1];`,
     ["4:7 expected ';' to end the statement after ']', got ']'"],
   ],
   [
-    HEAD + 'qubit[2] q;\nrx(pi q[0];\nx q[1];',
+    `${HEAD}qubit[2] q;\nrx(pi q[0];\nx q[1];`,
     ["4:6 expected ',' or ')' between the angles after 'pi', got 'q'"],
   ],
-  [HEAD + 'qubit[2] q;\n}\nx q[1];', ["4:1 unexpected '}': no block is open here"]],
+  [`${HEAD}qubit[2] q;\n}\nx q[1];`, ["4:1 unexpected '}': no block is open here"]],
   [
-    HEAD + 'qubit q[2];\nx q[0];',
+    `${HEAD}qubit q[2];\nx q[0];`,
     ["3:8 expected ';', got '[' (the size stands before the name: qubit[n] q;)"],
   ],
   [
-    HEAD + 'qubit q;\nbit[2] c = "101";\nc[0] = 2;\nc[0] += 1;\nd = 1;',
+    `${HEAD}qubit q;\nbit[2] c = "101";\nc[0] = 2;\nc[0] += 1;\nd = 1;`,
     [
       '4:12 expected 2 bits, got 3',
       '5:8 expected a whole number that fits 1 bit, got 2',
@@ -204,9 +204,9 @@ const TEXTS: readonly (readonly [string, readonly string[]])[] = [
       '7:1 unknown bit register: d',
     ],
   ],
-  [HEAD + 'qubit q;\nelse { x q; }', ["4:1 unexpected 'else': no if stands before it"]],
+  [`${HEAD}qubit q;\nelse { x q; }`, ["4:1 unexpected 'else': no if stands before it"]],
   [
-    HEAD + 'gate h a { }\ngate U a { }\ngate t2 a { }\ngate t2 a { }',
+    `${HEAD}gate h a { }\ngate U a { }\ngate t2 a { }\ngate t2 a { }`,
     [
       '3:6 gate h is already defined',
       '4:6 gate U is already defined',
@@ -214,11 +214,11 @@ const TEXTS: readonly (readonly [string, readonly string[]])[] = [
     ],
   ],
   [
-    HEAD + 'qubit[2] q;\nh q[0][1];\nqubit s;\nh s[0];',
+    `${HEAD}qubit[2] q;\nh q[0][1];\nqubit s;\nh s[0];`,
     ['4:7 q[...] is no register: it takes no index', '6:4 s is no register: it takes no index'],
   ],
   [
-    HEAD + 'qubit[3] q;\ncx q[0, 1];\nh q[1:0:2];',
+    `${HEAD}qubit[3] q;\ncx q[0, 1];\nh q[1:0:2];`,
     [
       "4:7 expected ']', got ',' (choose several with a set: q[{0, 2}])",
       '5:4 the step of a range must not be 0',
@@ -236,18 +236,18 @@ const TEXTS: readonly (readonly [string, readonly string[]])[] = [
     ],
   ],
   [
-    HEAD_2 + 'opaque magic(a) p, q;\nqreg r[2];\nmagic(1) r[0], r[1];\niswap r[0], r[1];',
+    `${HEAD_2}opaque magic(a) p, q;\nqreg r[2];\nmagic(1) r[0], r[1];\niswap r[0], r[1];`,
     [
       '5:1 gate magic is opaque: it has no definition',
       '6:1 unknown gate: iswap (the header of OpenQASM 2.0 lacks it: define it with gate iswap ... { ... })',
     ],
   ],
   [
-    HEAD_2 + 'qreg q[2]; creg c[1];\nmeasure q -> c;\nmeasure q[0] -> c;',
+    `${HEAD_2}qreg q[2]; creg c[1];\nmeasure q -> c;\nmeasure q[0] -> c;`,
     ['4:14 expected 2 bits for the outcomes, got 1'],
   ],
   [
-    HEAD + 'qubit q;\nx q;\n0x q;\n123abc q;\nrx("01") q;\nrx("ab") q;',
+    `${HEAD}qubit q;\nx q;\n0x q;\n123abc q;\nrx("01") q;\nrx("ab") q;`,
     [
       "5:1 unknown number: '0x'",
       "6:1 unknown number: '123abc'",
@@ -256,16 +256,16 @@ const TEXTS: readonly (readonly [string, readonly string[]])[] = [
     ],
   ],
   [
-    HEAD + 'qubit q; bit[2] c;\nx q; cc = measure q;\nif (c == "1") x q;\nif (c[5]) x q;',
+    `${HEAD}qubit q; bit[2] c;\nx q; cc = measure q;\nif (c == "1") x q;\nif (c[5]) x q;`,
     [
       '4:6 unknown bit register: cc (did you mean c?)',
       '5:7 expected registers of one length, got 2 and 1 bits',
       '6:7 index of c must be in [-2, 1], got 5',
     ],
   ],
-  [HEAD + 'gate g(a, a) b { }\nqubit q;\ng(1, 2) q;', ['3:11 the gate has two parts named a']],
+  [`${HEAD}gate g(a, a) b { }\nqubit q;\ng(1, 2) q;`, ['3:11 the gate has two parts named a']],
   [
-    HEAD + 'gate g a {\n  cx a;\n  h a, a;\n  measure a;\n  x a[0];\n}\nqubit q;\ng q;',
+    `${HEAD}gate g a {\n  cx a;\n  h a, a;\n  measure a;\n  x a[0];\n}\nqubit q;\ng q;`,
     [
       '4:3 gate cx takes 2 qubits, got 1',
       '5:8 a gate uses the same qubit twice',
@@ -274,7 +274,7 @@ const TEXTS: readonly (readonly [string, readonly string[]])[] = [
     ],
   ],
   [
-    HEAD + 'gate g a {\n  x a\n  y a;\n  zz a;\n}\nqubit q;\ng q',
+    `${HEAD}gate g a {\n  x a\n  y a;\n  zz a;\n}\nqubit q;\ng q`,
     [
       "4:6 expected ';' to end the statement after 'a', got 'y'",
       '6:3 unknown gate: zz (did you mean z?)',
@@ -282,7 +282,7 @@ const TEXTS: readonly (readonly [string, readonly string[]])[] = [
     ],
   ],
   [
-    HEAD + 'qubit q; bit c;\nif (c) {\n  x q;\n  y r;\n  if (c == 1 { z q; }\n  h q\n}\nx qq;',
+    `${HEAD}qubit q; bit c;\nif (c) {\n  x q;\n  y r;\n  if (c == 1 { z q; }\n  h q\n}\nx qq;`,
     [
       '6:5 unknown qubit register: r',
       "7:13 expected ')' to end the condition after '1', got '{'",
@@ -300,19 +300,19 @@ const TEXTS: readonly (readonly [string, readonly string[]])[] = [
     ],
   ],
   [
-    HEAD + 'qubit[2] q;\nfor int i in [0:2000000] { x q[0]; }',
+    `${HEAD}qubit[2] q;\nfor int i in [0:2000000] { x q[0]; }`,
     ['4:14 loops must have at most 1000000 iterations, got 2000001'],
   ],
-  [HEAD + 'qubit q;\nx q;\n@note\n@other', ['6:7 expected a statement, got the end of the file']],
+  [`${HEAD}qubit q;\nx q;\n@note\n@other`, ['6:7 expected a statement, got the end of the file']],
   [
-    HEAD + 'qubit[2] q; bit[2] c;\nmeasure q[{0, 0}] -> c;\nc[{0, 0}] = "11";',
+    `${HEAD}qubit[2] q; bit[2] c;\nmeasure q[{0, 0}] -> c;\nc[{0, 0}] = "11";`,
     [
       '4:1 a measurement uses the same qubit or bit twice',
       '5:1 an assignment writes the same bit twice',
     ],
   ],
   [
-    HEAD + 'qubit[2] q; bit b;\nconst int n = b;\nqubit[b] r;\nx q[b];',
+    `${HEAD}qubit[2] q; bit b;\nconst int n = b;\nqubit[b] r;\nx q[b];`,
     [
       '4:15 expected a constant, got bits that only the run knows',
       '5:7 expected a constant, got bits that only the run knows',
@@ -320,7 +320,7 @@ const TEXTS: readonly (readonly [string, readonly string[]])[] = [
     ],
   ],
   [
-    HEAD + 'qubit q;\nreset r;\nbarrier q, s;\nif (t) x q;\nc[0] = measure q;',
+    `${HEAD}qubit q;\nreset r;\nbarrier q, s;\nif (t) x q;\nc[0] = measure q;`,
     [
       '4:7 unknown qubit register: r',
       '5:12 unknown qubit register: s',
@@ -329,14 +329,14 @@ const TEXTS: readonly (readonly [string, readonly string[]])[] = [
     ],
   ],
   [
-    HEAD + 'const float pi = 3;\ngate pi a { }\nqubit q;\nqubit q2 q3;\nx q;',
+    `${HEAD}const float pi = 3;\ngate pi a { }\nqubit q;\nqubit q2 q3;\nx q;`,
     [
       '3:13 pi is a constant of the language',
       "6:9 expected ';' to end the statement after 'q2', got 'q3'",
     ],
   ],
   [
-    HEAD + 'qubit q;\nx(q);\nx q q;\nU(1, 2) q;\ngphase(1) q;\ngphase q;',
+    `${HEAD}qubit q;\nx(q);\nx q q;\nU(1, 2) q;\ngphase(1) q;\ngphase q;`,
     [
       "4:5 expected a register, got ';'",
       "5:4 expected ';' to end the statement after 'q', got 'q'",
