@@ -110,7 +110,7 @@ class DeviceReader {
     ) {
       this.problem(
         'bad-wire-count',
-        `wireCount must be in [${Math.max(1, mentioned)}, ${DEVICE_WIRES_MAX}], got ${JSON.stringify(count)}`,
+        `wireCount must be in [${Math.max(1, mentioned)}, ${DEVICE_WIRES_MAX}], got ${shown(count)}`,
       );
       return Math.min(mentioned, DEVICE_WIRES_MAX);
     }
@@ -134,22 +134,19 @@ class DeviceReader {
         typeof x === 'number' && Number.isInteger(x) && x >= 0 && x < DEVICE_WIRES_MAX;
       if (isWire(a) && isWire(b) && a !== b) return [a, b];
     }
-    this.problem(
-      'bad-link',
-      `expected two different wire numbers in ${path}, got ${JSON.stringify(item)}`,
-    );
+    this.problem('bad-link', `expected two different wire numbers in ${path}, got ${shown(item)}`);
     return [0, 0];
   }
 
   private list(item: Json, path: string): readonly Json[] {
     if (Array.isArray(item)) return item;
-    this.problem('bad-list', `expected a list for ${path}, got ${JSON.stringify(item)}`);
+    this.problem('bad-list', `expected a list for ${path}, got ${shown(item)}`);
     return [];
   }
 
   private object(item: Json, path: string, keys: readonly string[]): { [key: string]: Json } {
     if (item === null || typeof item !== 'object' || Array.isArray(item)) {
-      this.problem('bad-object', `expected an object for ${path}, got ${JSON.stringify(item)}`);
+      this.problem('bad-object', `expected an object for ${path}, got ${shown(item)}`);
       return {};
     }
     for (const key of Object.keys(item)) {
@@ -177,14 +174,21 @@ class DeviceReader {
         (range === '(0, inf)' ? value > 0 : value >= 0) &&
         (range !== '[0, 1]' || value <= 1);
       if (isInside) out[key] = value;
-      else
-        this.problem(
-          'out-of-range',
-          `${path}.${key} must be in ${range}, got ${JSON.stringify(value)}`,
-        );
+      else this.problem('out-of-range', `${path}.${key} must be in ${range}, got ${shown(value)}`);
     }
     return out;
   }
+}
+
+/** A value as it stands in the file, short enough for a message. */
+function shown(value: Json): string {
+  if (Array.isArray(value)) {
+    const isFlat = value.length <= 4 && value.every((x) => x === null || typeof x !== 'object');
+    return isFlat ? JSON.stringify(value) : 'a list';
+  }
+  if (value !== null && typeof value === 'object') return 'an object';
+  const text = JSON.stringify(value);
+  return text.length > 60 ? `${text.slice(0, 57)}...` : text;
 }
 
 function pick(from: { [key: string]: Json }, keys: readonly string[]): { [key: string]: Json } {

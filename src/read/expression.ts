@@ -104,6 +104,12 @@ const CONSTANTS = new Map<string, Value>([
   ['e', scalar(Math.E)],
 ]);
 
+/** A constant as messages show it; an empty expression parses to a constant without a value. */
+function shownConstant(value: unknown): string {
+  if (value === undefined) return 'nothing';
+  return (typeof value === 'string' ? JSON.stringify(value) : String(value)).slice(0, 60);
+}
+
 function evaluate(node: Node, depth = 0): Value {
   if (depth > 10 * NESTING_MAX)
     fail('too-deep', 'expected a shorter expression, got one nested too deeply');
@@ -111,7 +117,7 @@ function evaluate(node: Node, depth = 0): Value {
   switch (node.type) {
     case 'ConstantNode':
       if (typeof node.value === 'number' && Number.isFinite(node.value)) return scalar(node.value);
-      return fail('bad-constant', `expected a finite number, got ${JSON.stringify(node.value)}`);
+      return fail('bad-constant', `expected a finite number, got ${shownConstant(node.value)}`);
     case 'ParenthesisNode':
       return inner(node.content!); // a ParenthesisNode has content
     case 'SymbolNode':

@@ -138,7 +138,7 @@ describe('expressions', () => {
     ['sqt(2)', 'did you mean sqrt?'],
     ['a = 3', 'got assignment'],
     ['"x"', 'expected a finite number, got "x"'],
-    ['1e400', 'expected a finite number, got null'],
+    ['1e400', 'expected a finite number, got Infinity'],
     ['h + cx', 'expected sizes that fit for a sum, got 2x2 and 4x4'],
     ['h * cx', 'expected sizes that fit for a product, got 2x2 and 4x4'],
     ['identity(1000)', 'at most 256 rows, got 1000x1000'],
