@@ -1,0 +1,84 @@
+/**
+ * Fits the angles of a template to a target: the job that workers run.
+ *
+ * Starts: uniform in (-pi, pi] from `random(seed, id)`, or the angles given plus a normal perturbation.
+ * Result: the best angles found and D there; `status` says why the search stopped. Same job, same bytes, wherever it
+ * runs; a stop from outside returns the best so far with status `aborted`.
+ */
+import { type Control, freeRunning } from '../control.ts';
+import type { Job } from '../jobs.ts';
+import { normal, random } from '../numeric/random.ts';
+import { levenbergMarquardt } from '../optimise/levenberg-marquardt.ts';
+import type { OptimiserResult, Status } from '../optimise/result.ts';
+import { FitObjective, type FitTarget } from './objective.ts';
+import type { Template } from './template.ts';
+
+export type { FitTarget } from './objective.ts';
+
+export type FitJob = Job & {
+  kind: 'fit';
+  template: Template;
+  target: FitTarget;
+  /** Angles to start from; random ones without. */
+  start?: Float64Array;
+  /** Standard deviation added to `start`, in radians; default 0. */
+  perturbation?: number;
+  optimiser: 'lm' | 'bfgs' | 'lbfgs' | 'nelder-mead';
+  /** 1 = this angle keeps its starting value. */
+  frozen?: Uint8Array;
+  /** Stop once D is at most this. */
+  goal: number;
+  iterationsMax: number;
+};
+
+export type FitResult = {
+  id: string;
+  angles: Float64Array;
+  distance: number;
+  status: Status;
+  iterations: number;
+  evaluations: number;
+};
+
+/** Iterations between two reports of progress, and between two pauses. */
+const REPORT_EVERY = 4;
+
+export async function fitBlock(job: FitJob, control: Control = freeRunning): Promise<FitResult> {
+  const objective = new FitObjective(job.template, job.target, job.frozen);
+  const start = startingAngles(job, objective.size);
+  const run = levenbergMarquardt(objective, start, {
+    goal: objective.valueOf(job.goal),
+    iterationsMax: job.iterationsMax,
+    control,
+    onIteration: (iteration, value) => {
+      if (iteration % REPORT_EVERY !== 0) return;
+      control.report({ stage: job.id, iteration, distance: objective.distance(value) });
+    },
+  });
+  let turn = run.next();
+  for (let k = 1; !turn.done; k++) {
+    if (k % REPORT_EVERY === 0) await control.pause();
+    turn = run.next();
+  }
+  return resultOf(job, objective, turn.value);
+}
+
+function resultOf(job: FitJob, objective: FitObjective, found: OptimiserResult): FitResult {
+  const { x, value, status, iterations, evaluations } = found;
+  const angles = x.map((angle) => angle - 2 * Math.PI * Math.round(angle / (2 * Math.PI)));
+  return {
+    id: job.id,
+    angles,
+    distance: objective.distance(value),
+    status,
+    iterations,
+    evaluations,
+  };
+}
+
+function startingAngles({ id, seed, start, perturbation = 0 }: FitJob, size: number): Float64Array {
+  const draw = random(seed, id);
+  if (!start) return Float64Array.from({ length: size }, () => Math.PI * (2 * draw() - 1));
+  if (perturbation === 0) return start.slice();
+  return start.map((angle) => angle + perturbation * normal(draw));
+}
