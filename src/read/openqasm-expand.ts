@@ -39,6 +39,8 @@ export function execute(r: Reader, statement: Statement): void {
     run(r, statement);
   } catch (error) {
     if (!(error instanceof Abandoned)) throw error;
+    // a mistake costs more time than a statement
+    spend(r, statement.at, 9);
     spoilDeclared(r, statement);
   }
   if (r.operations.length === first) return;

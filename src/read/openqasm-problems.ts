@@ -31,7 +31,7 @@ export type Problems = {
   file: string;
   text: string;
   /** Offset of the first character of each line. */
-  lineStarts: readonly number[];
+  lineStarts: Int32Array;
   errors: { at: number; problem: InputProblem }[];
   warnings: InputProblem[];
   seen: Set<string>;
@@ -40,9 +40,12 @@ export type Problems = {
 };
 
 export function problemsOf(text: string, file: string): Problems {
-  const lineStarts = [0];
-  for (let at = text.indexOf('\n'); at >= 0; at = text.indexOf('\n', at + 1)) {
-    lineStarts.push(at + 1);
+  // two passes over the characters: a list that grows would be slow for millions of lines
+  let lines = 1;
+  for (let at = 0; at < text.length; at++) if (text.charCodeAt(at) === 10) lines++;
+  const lineStarts = new Int32Array(lines);
+  for (let at = 0, line = 1; line < lines; at++) {
+    if (text.charCodeAt(at) === 10) lineStarts[line++] = at + 1;
   }
   return { file, text, lineStarts, errors: [], warnings: [], seen: new Set(), unlisted: 0 };
 }

@@ -5,7 +5,7 @@
  * Understood: the gates of the standard headers, U, gphase, gate definitions, modifiers, registers, ranges,
  * sets, aliases, broadcasting, typed constants, for over constant ranges, if and else on bits, measure, reset,
  * barrier, assignments of bits, annotations. Refused by name: everything else (see openqasm-statements.ts).
- * Limits: 10,000 wires, 100,000 bits, 500,000 operations when written out, blocks 64 deep, expressions 200
+ * Limits: 20 million characters, 10,000 wires, 100,000 bits, 500,000 operations when written out, blocks 64 deep, expressions 200
  * deep, definitions that call each other 200 deep, loops of 1,000,000 rounds, powers up to 1e6.
  * `negctrl(n) @` is read as n nested `negctrl @`: all controls on 0.
  * Sources: Cross, Bishop, Smolin, Gambetta, arXiv:1707.03429; ACM Trans. Quantum Comput. 3, 12 (2022).
@@ -19,7 +19,7 @@ import { scannerOf } from './openqasm-scanner.ts';
 import { nextStatement, parserOf } from './openqasm-statements.ts';
 
 /** Longest text that is read, in UTF-16 code units. */
-const TEXT_MAX = 100_000_000;
+const TEXT_MAX = 20_000_000;
 
 /**
  * The circuit of an OpenQASM text; `name` is its file name, for messages. Throws one InputError with all
