@@ -8,7 +8,7 @@
  * Convention: all wires start in |0>. Noise: after each gate a depolarising channel of the gate's error, the
  * T1/T2 channel during waits, a wrong bit with the readout error, a reset that leaves |1> with the reset error.
  * Frame changes are free. Gates on three wires or more carry no noise of their own.
- * Cost: 4^n per gate and branch. Fails: InputError `too-large` above 8 wires or 4096 branches.
+ * Cost: 4^n per gate and branch. Fails: InputError `too-large` above 8 wires, 4096 branches or 128 MiB of branches.
  */
 import { bitsRead, type Circuit, evaluateBits, operationWires } from '../circuit/circuit.ts';
 import { applyMatrixInto, gateMatrix } from '../circuit/unitary.ts';
@@ -19,6 +19,8 @@ import { isFrameChange, scheduleCircuit } from './schedule.ts';
 
 export const DENSITY_WIRES_MAX = 8;
 export const BRANCHES_MAX = 4096;
+/** Memory for all branches together. */
+const BRANCH_BYTES_MAX = 2 ** 27;
 
 type Branch = { bits: Map<number, boolean>; rho: Float64Array };
 
@@ -100,10 +102,12 @@ class DensityRun {
       }
     }
     if (operation.kind === 'reset' || operation.kind === 'assign') this.merge();
-    if (this.branches.length > BRANCHES_MAX) {
+    const bytes = 16 * 4 ** this.circuit.wires;
+    const most = Math.min(BRANCHES_MAX, Math.floor(BRANCH_BYTES_MAX / bytes));
+    if (this.branches.length > most) {
       throw new InputError({
         code: 'too-large',
-        message: `the noisy simulation needs more than ${BRANCHES_MAX} branches of measured bits; that is the limit here`,
+        message: `the noisy simulation needs more than ${most} branches of measured bits; that is the limit for ${this.circuit.wires} wires`,
       });
     }
   }
