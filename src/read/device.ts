@@ -65,12 +65,18 @@ class DeviceReader {
     if (!('links' in top)) {
       this.problem('missing-links', 'missing links', 'a device needs at least "links": [[0, 1]]');
     }
-    const allWires = this.figures(top.allWires ?? {}, 'allWires', WIRE_KEYS) as DeviceWire;
-    const allLinks = this.figures(top.allLinks ?? {}, 'allLinks', LINK_KEYS);
-    const links = this.list(top.links ?? [], 'links').map((item, k) =>
+    for (const key of ['name', 'note', '$schema']) {
+      const value = top[key];
+      if (value !== undefined && typeof value !== 'string') {
+        this.problem('bad-text', `expected a text for ${key}, got ${shown(value)}`);
+      }
+    }
+    const allWires = this.figures(given(top.allWires, {}), 'allWires', WIRE_KEYS) as DeviceWire;
+    const allLinks = this.figures(given(top.allLinks, {}), 'allLinks', LINK_KEYS);
+    const links = this.list(given(top.links, []), 'links').map((item, k) =>
       this.link(item, `links[${k}]`, allLinks),
     );
-    const listed = this.list(top.wires ?? [], 'wires').map((item, k) => ({
+    const listed = this.list(given(top.wires, []), 'wires').map((item, k) => ({
       ...allWires,
       ...(this.figures(item, `wires[${k}]`, WIRE_KEYS) as DeviceWire),
     }));
@@ -100,8 +106,8 @@ class DeviceReader {
     };
   }
 
-  private wireCount(given: Json | undefined, mentioned: number): number {
-    const count = given ?? Math.max(1, mentioned);
+  private wireCount(wanted: Json | undefined, mentioned: number): number {
+    const count = wanted === undefined ? Math.max(1, mentioned) : wanted;
     if (
       typeof count !== 'number' ||
       !Number.isInteger(count) ||
@@ -178,6 +184,11 @@ class DeviceReader {
     }
     return out;
   }
+}
+
+/** The value of a key, or what stands for a key that is left out; null is a value, and a wrong one. */
+function given(value: Json | undefined, instead: Json): Json {
+  return value === undefined ? instead : value;
 }
 
 /** A value as it stands in the file, short enough for a message. */
