@@ -101,7 +101,7 @@ class DensityRun {
         this.branches.push({ ...branch, bits: new Map(branch.bits).set(operation.bit, value) });
       }
     }
-    if (operation.kind === 'reset' || operation.kind === 'assign') this.merge();
+    if (operation.kind !== 'gate') this.merge();
     const bytes = 16 * 4 ** this.circuit.wires;
     const most = Math.min(BRANCHES_MAX, Math.floor(BRANCH_BYTES_MAX / bytes));
     if (this.branches.length > most) {
