@@ -6,8 +6,10 @@
  * condition reads would change its mind half-way; then the condition's value is kept in a hidden bit first.
  */
 import { type BitExpression, bitsOf, bitWritten, type Operation } from '../circuit/circuit.ts';
+import { bitsOfWidth, convert, truth } from './openqasm-arithmetic.ts';
 import { allOf, anyOf, negated, oddOf } from './openqasm-conditions.ts';
-import { defineGate, executeCall, integerMeaning } from './openqasm-gates.ts';
+import { defineGate } from './openqasm-definitions.ts';
+import { executeCall, integerMeaning } from './openqasm-gates.ts';
 import {
   addBits,
   BITS_MAX,
@@ -15,19 +17,17 @@ import {
   emit,
   holdBit,
   lookUp,
-  loopValues,
   type Reader,
-  resolve,
-  sizeOf,
   spend,
   type Value,
   WIRES_MAX,
 } from './openqasm-names.ts';
+import { parserOf } from './openqasm-parser.ts';
 import { Abandoned, fail, placeOf, warn } from './openqasm-problems.ts';
 import { scannerOf } from './openqasm-scanner.ts';
-import { nextStatement, parserOf } from './openqasm-statements.ts';
+import { nextStatement } from './openqasm-statements.ts';
 import type { Operand, Statement } from './openqasm-tree.ts';
-import { bitsOfWidth, convert, evaluate, truth } from './openqasm-values.ts';
+import { evaluate, loopValues, resolve, sizeOf } from './openqasm-values.ts';
 
 type Of<K extends Statement['kind']> = Extract<Statement, { kind: K }>;
 

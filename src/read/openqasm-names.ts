@@ -1,9 +1,8 @@
-/** What the names of an OpenQASM text stand for while it is read, and how operands find their wires and bits. */
+/** The state of a reading: what names stand for, what has been made, and how much work was done for it. */
 import type { BitExpression, Operation, Register } from '../circuit/circuit.ts';
+import type { Parser } from './openqasm-parser.ts';
 import { abandon, fail, halt, nearName, type Problems } from './openqasm-problems.ts';
-import type { Parser } from './openqasm-statements.ts';
-import type { GateDefinition, IndexPart, Named, Operand } from './openqasm-tree.ts';
-import { type evaluate, evaluateInteger } from './openqasm-values.ts';
+import type { GateDefinition, Named } from './openqasm-tree.ts';
 
 /** Limits, stated in the documentation of `readCircuit`. */
 export const WIRES_MAX = 10_000;
@@ -106,91 +105,6 @@ export function declare(r: Reader, { name, at }: Named, meaning: Meaning): void 
   scope.set(name, meaning);
 }
 
-/** Wires or bits that an operand stands for; `scalar` when it is a single one and not a register of one. */
-export type Places = { places: readonly number[]; scalar: boolean };
-
-export function resolve(r: Reader, operand: Operand, kind: 'qubits' | 'bits'): Places {
-  const meaning = lookUp(r, operand.name);
-  const what = kind === 'qubits' ? 'qubit register' : 'bit register';
-  if (!meaning) failUnknown(r, operand.at, what, operand.name);
-  if (meaning.kind !== kind) {
-    const is = { qubits: 'a qubit register', bits: 'a bit register', value: 'a constant' };
-    const wanted = kind === 'qubits' ? 'a qubit' : 'a bit';
-    const message = `expected ${wanted}, got ${operand.name}, which is ${is[meaning.kind]}`;
-    fail(r.problems, operand.at, 'wrong-kind', message);
-  }
-  let places: Places = meaning;
-  for (const part of operand.indices) places = choose(r, places, part, operand);
-  return places;
-}
-
-function choose(r: Reader, { places, scalar }: Places, part: IndexPart, operand: Operand): Places {
-  if (scalar) {
-    const index = operand.indices.indexOf(part);
-    const what = index === 0 ? operand.name : `${operand.name}[...]`;
-    fail(r.problems, part.at, 'wrong-kind', `${what} is no register: it takes no index`);
-  }
-  const size = places.length;
-  const pick = (value: number, at: number): number => {
-    const index = value < 0 && r.parser.dialect === '3' ? value + size : value;
-    if (index >= 0 && index < size) return places[index]!;
-    const lowest = r.parser.dialect === '3' ? -size : 0;
-    const message = `index of ${operand.name} must be in [${lowest}, ${size - 1}], got ${value}`;
-    return fail(r.problems, at, 'index-out-of-range', message);
-  };
-  switch (part.kind) {
-    case 'one': {
-      const { value } = part;
-      return { places: [pick(evaluateInteger(r, value, 'an index'), value.at)], scalar: true };
-    }
-    case 'set': {
-      spend(r, part.at, part.items.length);
-      const chosen = part.items.map((item) => pick(evaluateInteger(r, item, 'an index'), item.at));
-      return { places: chosen, scalar: false };
-    }
-    case 'range': {
-      const step = part.step ? evaluateInteger(r, part.step, 'a step') : 1;
-      let first = part.first ? evaluateInteger(r, part.first, 'an index') : step > 0 ? 0 : size - 1;
-      let last = part.last ? evaluateInteger(r, part.last, 'an index') : step > 0 ? size - 1 : 0;
-      pick(first, part.first?.at ?? part.at);
-      pick(last, part.last?.at ?? part.at);
-      if (first < 0) first += size;
-      if (last < 0) last += size;
-      const count = rangeCount(r, part.at, first, step, last);
-      spend(r, part.at, count);
-      return {
-        places: Array.from({ length: count }, (_, k) => places[first + k * step]!),
-        scalar: false,
-      };
-    }
-  }
-}
-
-function rangeCount(r: Reader, at: number, first: number, step: number, last: number): number {
-  if (step === 0) fail(r.problems, at, 'wrong-range', 'the step of a range must not be 0');
-  return Math.max(0, Math.floor((last - first) / step) + 1);
-}
-
-/** The values a loop runs through. */
-export function* loopValues(r: Reader, part: IndexPart): Generator<number> {
-  if (part.kind === 'set') {
-    for (const item of part.items) yield evaluateInteger(r, item, 'a loop value');
-    return;
-  }
-  if (part.kind === 'one' || !part.first || !part.last) {
-    fail(r.problems, part.at, 'wrong-range', 'expected a range [a:b] or a set {a, b} to loop over');
-  }
-  const first = evaluateInteger(r, part.first, 'a loop bound');
-  const last = evaluateInteger(r, part.last, 'a loop bound');
-  const step = part.step ? evaluateInteger(r, part.step, 'a step') : 1;
-  const count = rangeCount(r, part.at, first, step, last);
-  if (count > ITERATIONS_MAX) {
-    const message = `loops must have at most ${ITERATIONS_MAX} iterations, got ${count}`;
-    halt(r.problems, part.at, message);
-  }
-  for (let k = 0; k < count; k++) yield first + k * step;
-}
-
 /** A hidden bit that keeps a value while the bits it came from are overwritten. */
 export function holdBit(r: Reader, at: number): number {
   if (r.bits >= BITS_MAX) halt(r.problems, at, `${r.bits + 1} bits: ${BITS_MAX} is the limit here`);
@@ -208,25 +122,6 @@ export function addBits(r: Reader, name: string, size: number, scalar: boolean):
   r.bitRegisters.push({ name, first, size, scalar });
   r.bits += size;
   return first;
-}
-
-/** A size in brackets, at least 1 and within the limit. */
-export function sizeOf(
-  r: Reader,
-  size: Parameters<typeof evaluate>[1],
-  taken: number,
-  max: number,
-  what: string,
-): number {
-  const value = evaluateInteger(r, size, 'the size of a register');
-  if (value < 1) {
-    fail(r.problems, size.at, 'wrong-size', `the size of a register must be >= 1, got ${value}`);
-  }
-  if (value + taken > max) {
-    const message = `${value + taken} ${what}: ${max} is the limit here`;
-    halt(r.problems, size.at, message);
-  }
-  return value;
 }
 
 /** Named constants of the language. */

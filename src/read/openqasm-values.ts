@@ -1,32 +1,32 @@
 /**
- * Evaluates expressions: constants by typed arithmetic, and boolean expressions over bits that only the run
- * knows.
- *
- * Convention: OpenQASM 3 rules for constants (integers stay integers, their division truncates towards zero
- * and is warned of when that loses something); 2.0 has real arithmetic only. `^` is exclusive or in 3 and a
- * power in 2.0. Registers compare as unsigned numbers, bit 0 least significant.
+ * Evaluates expressions, constants as well as boolean expressions over bits that only the run knows, and finds
+ * the wires and bits that operands with their indices stand for. `^` is exclusive or in 3 and a power in 2.0.
  */
-import type { BitExpression } from '../circuit/circuit.ts';
 import {
-  allOf,
-  anyOf,
-  bitEquals,
-  compareBits,
-  negated,
-  oddOf,
-  registerEquals,
-} from './openqasm-conditions.ts';
+  arithmetic,
+  bitsOfWidth,
+  compare,
+  constant,
+  convert,
+  fromBit,
+  integersBitwise,
+  numberOf,
+  numeric,
+  power,
+  truth,
+} from './openqasm-arithmetic.ts';
+import { allOf, anyOf, negated, oddOf } from './openqasm-conditions.ts';
 import {
   CONSTANTS,
   failUnknown,
+  ITERATIONS_MAX,
   lookUp,
   type Reader,
-  resolve,
   spend,
   type Value,
 } from './openqasm-names.ts';
-import { fail, nearName, warn } from './openqasm-problems.ts';
-import type { Expression } from './openqasm-tree.ts';
+import { fail, halt, nearName } from './openqasm-problems.ts';
+import type { Expression, IndexPart, Operand } from './openqasm-tree.ts';
 
 type Chain = Extract<Expression, { kind: 'chain' }>;
 
@@ -63,8 +63,6 @@ export function evaluate(r: Reader, node: Expression): Value {
   }
 }
 
-const constant = (value: boolean): BitExpression => ({ kind: 'constant', value });
-
 function evaluateName(r: Reader, node: Extract<Expression, { kind: 'operand' }>): Value {
   const { operand } = node;
   const known = lookUp(r, operand.name);
@@ -96,30 +94,6 @@ function evaluateUnary(r: Reader, operator: string, value: Value, at: number): V
   return { kind: of.kind, value: operator === '-' ? -of.value : of.value };
 }
 
-/** A single boolean; what is constant becomes a constant of the text. */
-function fromBit(bit: BitExpression): Value {
-  return bit.kind === 'constant'
-    ? { kind: 'bool', value: bit.value }
-    : { kind: 'bits', bits: [bit], scalar: true };
-}
-
-/** A value as a condition: numbers are true when they are not zero, registers when any bit is set. */
-export function truth(_r: Reader, value: Value): BitExpression {
-  if (value.kind === 'bool') return constant(value.value);
-  if (value.kind !== 'bits') return constant(value.value !== 0);
-  return value.bits.length === 1 ? value.bits[0]! : anyOf(value.bits);
-}
-
-type Numeric = { kind: 'int' | 'float'; value: number };
-
-function numberOf(r: Reader, value: Value, at: number): Numeric {
-  if (value.kind === 'bits') {
-    const message = 'expected a constant, got bits that only the run knows';
-    return fail(r.problems, at, 'not-constant', message);
-  }
-  return value.kind === 'bool' ? { kind: 'int', value: Number(value.value) } : value;
-}
-
 function evaluateChain(r: Reader, node: Chain): Value {
   const operator = node.rest[0]!.operator;
   if (/^(?:&&|\|\||&|\||\^)$/.test(operator)) return evaluateBitwise(r, node, operator);
@@ -147,174 +121,6 @@ function evaluateBitwise(r: Reader, node: Chain, operator: string): Value {
   const bits = Array.from({ length: width }, (_, k) => combine(columns.map((c) => c[k]!)));
   const scalar = values.every((v) => v.kind !== 'bits' || v.scalar);
   return scalar ? fromBit(bits[0]!) : { kind: 'bits', bits, scalar };
-}
-
-function integersBitwise(r: Reader, operator: string, values: readonly Value[], at: number): Value {
-  const numbers = values.map((v) => {
-    const { kind, value } = numberOf(r, v, at);
-    if (kind !== 'int') fail(r.problems, at, 'wrong-kind', `${operator} takes integers or bits`);
-    return BigInt(value);
-  });
-  const result = numbers.reduce((a, b) =>
-    operator === '&' ? a & b : operator === '|' ? a | b : a ^ b,
-  );
-  return { kind: 'int', value: Number(result) };
-}
-
-/** A value as `width` bits, least significant first; a number must fit. */
-export function bitsOfWidth(
-  r: Reader,
-  value: Value,
-  width: number,
-  at: number,
-): readonly BitExpression[] {
-  if (value.kind === 'bits') {
-    if (value.bits.length === width) return value.bits;
-    const message = `expected ${width} bits, got ${value.bits.length}`;
-    return fail(r.problems, at, 'size-mismatch', message);
-  }
-  const number = Number(value.value);
-  if (!Number.isSafeInteger(number) || number < 0 || number >= 2 ** width) {
-    const message = `expected a whole number that fits ${width} bit${width === 1 ? '' : 's'}, got ${number}`;
-    return fail(r.problems, at, 'size-mismatch', message);
-  }
-  return Array.from({ length: width }, (_, k) => constant(bitOf(number, k)));
-}
-
-const bitOf = (number: number, k: number): boolean => Math.floor(number / 2 ** k) % 2 === 1;
-
-function compare(r: Reader, op: string, left: Value, right: Value, at: number): Value {
-  if (left.kind !== 'bits' && right.kind !== 'bits') {
-    const [a, b] = [numberOf(r, left, at).value, numberOf(r, right, at).value];
-    const holds = {
-      '==': a === b,
-      '!=': a !== b,
-      '<': a < b,
-      '<=': a <= b,
-      '>': a > b,
-      '>=': a >= b,
-    };
-    return { kind: 'bool', value: holds[op as keyof typeof holds] }; // op is one of the six
-  }
-  if (left.kind !== 'bits') {
-    const mirrored = op.replace(/[<>]/, (c) => (c === '<' ? '>' : '<'));
-    return compare(r, mirrored, right, left, at);
-  }
-  spend(r, at, left.bits.length * (/[<>]/.test(op) ? left.bits.length : 1));
-  if (right.kind === 'bits') {
-    if (left.bits.length !== right.bits.length) {
-      const message = `expected registers of one length, got ${left.bits.length} and ${right.bits.length} bits`;
-      fail(r.problems, at, 'size-mismatch', message);
-    }
-    return fromBit(compareBits(op, left.bits, right.bits));
-  }
-  const number = Number(right.value);
-  if (!Number.isInteger(number)) {
-    fail(
-      r.problems,
-      at,
-      'wrong-kind',
-      `expected a whole number to compare bits with, got ${number}`,
-    );
-  }
-  if (left.scalar && (op === '==' || op === '!=') && (number === 0 || number === 1)) {
-    const same = bitEquals(left.bits[0]!, number === 1);
-    return fromBit(op === '==' ? same : negated(same));
-  }
-  return fromBit(compareWithNumber(r, op, left.bits, number, at));
-}
-
-/** A register as an unsigned number, compared with a constant. */
-function compareWithNumber(
-  r: Reader,
-  op: string,
-  bits: readonly BitExpression[],
-  number: number,
-  at: number,
-): BitExpression {
-  const top = 2 ** bits.length;
-  const always = (value: boolean): BitExpression => {
-    const message = `the comparison with ${number} is always ${value}: the register has ${bits.length} bits`;
-    warn(r.problems, at, 'constant-condition', message);
-    return constant(value);
-  };
-  switch (op) {
-    case '==':
-      return number < 0 || number >= top ? always(false) : registerEquals(bits, number);
-    case '!=':
-      return number < 0 || number >= top ? always(true) : negated(registerEquals(bits, number));
-    case '<':
-      if (number <= 0) return always(false);
-      return number >= top ? always(true) : belowNumber(bits, number);
-    case '<=':
-      return compareWithNumber(r, '<', bits, number + 1, at);
-    case '>':
-      return negated(compareWithNumber(r, '<', bits, number + 1, at));
-    default:
-      return negated(compareWithNumber(r, '<', bits, number, at));
-  }
-}
-
-/** value < number: for some set bit k of the number, bit k is 0 and all higher bits agree. */
-function belowNumber(bits: readonly BitExpression[], number: number): BitExpression {
-  const cases: BitExpression[] = [];
-  for (let k = 0; k < bits.length; k++) {
-    if (!bitOf(number, k)) continue;
-    const parts = [negated(bits[k]!)];
-    for (let h = k + 1; h < bits.length; h++) parts.push(bitEquals(bits[h]!, bitOf(number, h)));
-    cases.push(allOf(parts));
-  }
-  return anyOf(cases);
-}
-
-function arithmetic(r: Reader, op: string, a: Numeric, b: Numeric, at: number): Value {
-  const kind = a.kind === 'int' && b.kind === 'int' ? 'int' : 'float';
-  const [x, y] = [a.value, b.value];
-  if ((op === '/' || op === '%') && y === 0) {
-    fail(r.problems, at, 'not-finite', 'division by zero');
-  }
-  switch (op) {
-    case '+':
-      return numeric(r, at, kind, x + y);
-    case '-':
-      return numeric(r, at, kind, x - y);
-    case '*':
-      return numeric(r, at, kind, x * y);
-    case '/': {
-      if (kind === 'float') return numeric(r, at, kind, x / y);
-      const whole = Math.trunc(x / y);
-      if (whole !== x / y) {
-        const message = `${x} / ${y} divides integers and gives ${whole}; write ${x}.0 / ${y} for a fraction`;
-        warn(r.problems, at, 'integer-division', message);
-      }
-      return numeric(r, at, kind, whole);
-    }
-    case '%':
-      return numeric(r, at, kind, x % y);
-    default: {
-      if (kind !== 'int' || y < 0 || y > 60) {
-        fail(r.problems, at, 'wrong-kind', `${op} takes integers and a shift in [0, 60]`);
-      }
-      return numeric(r, at, kind, op === '<<' ? x * 2 ** y : Math.floor(x / 2 ** y));
-    }
-  }
-}
-
-function numeric(r: Reader, at: number, kind: 'int' | 'float', value: number): Value {
-  if (!Number.isFinite(value)) {
-    fail(r.problems, at, 'not-finite', `expected a finite number, got ${value}`);
-  }
-  if (kind === 'int' && !Number.isSafeInteger(value)) {
-    fail(r.problems, at, 'too-large', `integers must be below 2^53, got ${value}`);
-  }
-  return { kind, value: value === 0 ? 0 : value };
-}
-
-function power(r: Reader, at: number, base: Value, exponent: Value): Value {
-  const a = numberOf(r, base, at);
-  const b = numberOf(r, exponent, at);
-  const kind = a.kind === 'int' && b.kind === 'int' && b.value >= 0 ? 'int' : 'float';
-  return numeric(r, at, kind, a.value ** b.value);
 }
 
 const FUNCTIONS_3 = new Map<string, (x: number) => number>([
@@ -369,30 +175,6 @@ function evaluateCall(r: Reader, node: Extract<Expression, { kind: 'call' }>): V
   return fail(r.problems, at, 'unknown-function', `unknown function: ${name}`, hint);
 }
 
-/** A value as a type of the language; `explicit` allows what loses something. */
-export function convert(
-  r: Reader,
-  type: string,
-  value: Value,
-  at: number,
-  explicit = false,
-): Value {
-  if (type === 'bool') return fromBit(truth(r, value));
-  // a register under int(...) or uint(...) is what comparisons take it for anyway
-  if (explicit && value.kind === 'bits' && (type === 'uint' || type === 'int')) return value;
-  const { kind, value: number } = numberOf(r, value, at);
-  if (type === 'float' || type === 'angle') return { kind: 'float', value: number };
-  const whole = explicit ? Math.trunc(number) : number;
-  if (!Number.isSafeInteger(whole) || (type === 'uint' && whole < 0)) {
-    const wanted = type === 'uint' ? 'an integer >= 0' : 'an integer';
-    fail(r.problems, at, 'wrong-kind', `expected ${wanted}, got ${number}`);
-  }
-  if (kind === 'float' && !explicit && whole !== number) {
-    fail(r.problems, at, 'wrong-kind', `expected an integer, got ${number}`);
-  }
-  return { kind: 'int', value: whole };
-}
-
 /** An integer that the text alone decides. */
 export function evaluateInteger(r: Reader, node: Expression, what: string): number {
   const value = numberOf(r, evaluate(r, node), node.at);
@@ -412,4 +194,108 @@ export function evaluateReal(r: Reader, node: Expression, what: string): number 
   const { value } = numberOf(r, evaluate(r, node), node.at);
   if (Number.isFinite(value)) return value === 0 ? 0 : value;
   return fail(r.problems, node.at, 'not-finite', `expected ${what} that is finite, got ${value}`);
+}
+
+/** Wires or bits that an operand stands for; `scalar` when it is a single one and not a register of one. */
+export type Places = { places: readonly number[]; scalar: boolean };
+
+export function resolve(r: Reader, operand: Operand, kind: 'qubits' | 'bits'): Places {
+  const meaning = lookUp(r, operand.name);
+  const what = kind === 'qubits' ? 'qubit register' : 'bit register';
+  if (!meaning) failUnknown(r, operand.at, what, operand.name);
+  if (meaning.kind !== kind) {
+    const is = { qubits: 'a qubit register', bits: 'a bit register', value: 'a constant' };
+    const wanted = kind === 'qubits' ? 'a qubit' : 'a bit';
+    const message = `expected ${wanted}, got ${operand.name}, which is ${is[meaning.kind]}`;
+    fail(r.problems, operand.at, 'wrong-kind', message);
+  }
+  let places: Places = meaning;
+  for (const part of operand.indices) places = choose(r, places, part, operand);
+  return places;
+}
+
+function choose(r: Reader, { places, scalar }: Places, part: IndexPart, operand: Operand): Places {
+  if (scalar) {
+    const index = operand.indices.indexOf(part);
+    const what = index === 0 ? operand.name : `${operand.name}[...]`;
+    fail(r.problems, part.at, 'wrong-kind', `${what} is no register: it takes no index`);
+  }
+  const size = places.length;
+  const pick = (value: number, at: number): number => {
+    const index = value < 0 && r.parser.dialect === '3' ? value + size : value;
+    if (index >= 0 && index < size) return places[index]!;
+    const lowest = r.parser.dialect === '3' ? -size : 0;
+    const message = `index of ${operand.name} must be in [${lowest}, ${size - 1}], got ${value}`;
+    return fail(r.problems, at, 'index-out-of-range', message);
+  };
+  switch (part.kind) {
+    case 'one': {
+      const { value } = part;
+      return { places: [pick(evaluateInteger(r, value, 'an index'), value.at)], scalar: true };
+    }
+    case 'set': {
+      spend(r, part.at, part.items.length);
+      const chosen = part.items.map((item) => pick(evaluateInteger(r, item, 'an index'), item.at));
+      return { places: chosen, scalar: false };
+    }
+    case 'range': {
+      const step = part.step ? evaluateInteger(r, part.step, 'a step') : 1;
+      let first = part.first ? evaluateInteger(r, part.first, 'an index') : step > 0 ? 0 : size - 1;
+      let last = part.last ? evaluateInteger(r, part.last, 'an index') : step > 0 ? size - 1 : 0;
+      pick(first, part.first?.at ?? part.at);
+      pick(last, part.last?.at ?? part.at);
+      if (first < 0) first += size;
+      if (last < 0) last += size;
+      const count = rangeCount(r, part.at, first, step, last);
+      spend(r, part.at, count);
+      return {
+        places: Array.from({ length: count }, (_, k) => places[first + k * step]!),
+        scalar: false,
+      };
+    }
+  }
+}
+
+function rangeCount(r: Reader, at: number, first: number, step: number, last: number): number {
+  if (step === 0) fail(r.problems, at, 'wrong-range', 'the step of a range must not be 0');
+  return Math.max(0, Math.floor((last - first) / step) + 1);
+}
+
+/** The values a loop runs through. */
+export function* loopValues(r: Reader, part: IndexPart): Generator<number> {
+  if (part.kind === 'set') {
+    for (const item of part.items) yield evaluateInteger(r, item, 'a loop value');
+    return;
+  }
+  if (part.kind === 'one' || !part.first || !part.last) {
+    fail(r.problems, part.at, 'wrong-range', 'expected a range [a:b] or a set {a, b} to loop over');
+  }
+  const first = evaluateInteger(r, part.first, 'a loop bound');
+  const last = evaluateInteger(r, part.last, 'a loop bound');
+  const step = part.step ? evaluateInteger(r, part.step, 'a step') : 1;
+  const count = rangeCount(r, part.at, first, step, last);
+  if (count > ITERATIONS_MAX) {
+    const message = `loops must have at most ${ITERATIONS_MAX} iterations, got ${count}`;
+    halt(r.problems, part.at, message);
+  }
+  for (let k = 0; k < count; k++) yield first + k * step;
+}
+
+/** A size in brackets, at least 1 and within the limit. */
+export function sizeOf(
+  r: Reader,
+  size: Expression,
+  taken: number,
+  max: number,
+  what: string,
+): number {
+  const value = evaluateInteger(r, size, 'the size of a register');
+  if (value < 1) {
+    fail(r.problems, size.at, 'wrong-size', `the size of a register must be >= 1, got ${value}`);
+  }
+  if (value + taken > max) {
+    const message = `${value + taken} ${what}: ${max} is the limit here`;
+    halt(r.problems, size.at, message);
+  }
+  return value;
 }

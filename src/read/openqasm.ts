@@ -4,7 +4,7 @@
  *
  * Understood: the gates of the standard headers, U, gphase, gate definitions, modifiers, registers, ranges,
  * sets, aliases, broadcasting, typed constants, for over constant ranges, if and else on bits, measure, reset,
- * barrier, assignments of bits, annotations. Refused by name: everything else (see openqasm-statements.ts).
+ * barrier, assignments of bits, annotations. Refused by name: everything else (see openqasm-parser.ts).
  * Limits: 20 million characters, 10,000 wires, 100,000 bits, 500,000 operations when written out, blocks 64 deep, expressions 200
  * deep, definitions that call each other 200 deep, loops of 1,000,000 rounds, powers up to 1e6.
  * `negctrl(n) @` is read as n nested `negctrl @`: all controls on 0.
@@ -14,9 +14,10 @@ import type { Circuit } from '../circuit/circuit.ts';
 import { InputError, type InputProblem } from '../input-error.ts';
 import { execute } from './openqasm-expand.ts';
 import type { Reader } from './openqasm-names.ts';
+import { parserOf } from './openqasm-parser.ts';
 import { Abandoned, allProblems, Halted, problemsOf, report, warn } from './openqasm-problems.ts';
 import { scannerOf } from './openqasm-scanner.ts';
-import { nextStatement, parserOf } from './openqasm-statements.ts';
+import { nextStatement } from './openqasm-statements.ts';
 
 /** Longest text that is read, in UTF-16 code units. */
 const TEXT_MAX = 20_000_000;
