@@ -180,7 +180,7 @@ export function arithmetic(r: Reader, op: string, a: Numeric, b: Numeric, at: nu
     case '*':
       return numeric(r, at, kind, x * y);
     case '/': {
-      if (kind === 'float') return numeric(r, at, kind, x / y);
+      if (kind === 'float' || r.realDivision) return numeric(r, at, 'float', x / y);
       const whole = Math.trunc(x / y);
       if (whole !== x / y) {
         const message = `${x} / ${y} divides integers and gives ${whole}; write ${x}.0 / ${y} for a fraction`;

@@ -130,7 +130,13 @@ function modificationsOf(r: Reader, call: GateCall): Modification[] {
     const { at } = modifier;
     if (modifier.kind === 'inverse') return { kind: 'inverse', at };
     if (modifier.kind === 'power') {
-      return { kind: 'power', at, exponent: evaluateReal(r, modifier.exponent, 'an exponent') };
+      // the standard's own library writes pow(1/2) for a square root: fractions are real here
+      r.realDivision = true;
+      try {
+        return { kind: 'power', at, exponent: evaluateReal(r, modifier.exponent, 'an exponent') };
+      } finally {
+        r.realDivision = false;
+      }
     }
     const { count: node, positive } = modifier;
     const count = node ? evaluateInteger(r, node, 'a number of controls') : 1;

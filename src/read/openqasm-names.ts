@@ -55,6 +55,8 @@ export type Reader = {
   work: number;
   made: number;
   heldBits: number;
+  /** The quotient of integers is a fraction: in the exponents of `pow`. */
+  realDivision: boolean;
   hasVersion: boolean;
 };
 

@@ -7,7 +7,8 @@
  * barrier, assignments of bits, annotations. Refused by name: everything else (see openqasm-parser.ts).
  * Limits: 20 million characters, 10,000 wires, 100,000 bits, 500,000 operations when written out, blocks 64 deep, expressions 200
  * deep, definitions that call each other 200 deep, loops of 1,000,000 rounds, powers up to 1e6.
- * `negctrl(n) @` is read as n nested `negctrl @`: all controls on 0.
+ * `negctrl(n) @` is read as n nested `negctrl @`: all controls on 0. Integers divide without truncation in the
+ * exponent of `pow` (the standard's own library writes `pow(1/2)`), and with truncation elsewhere.
  * Sources: Cross, Bishop, Smolin, Gambetta, arXiv:1707.03429; ACM Trans. Quantum Comput. 3, 12 (2022).
  */
 import type { Circuit } from '../circuit/circuit.ts';
@@ -77,6 +78,7 @@ function readerOf(problems: Reader['problems']): Reader {
     work: 0,
     made: 0,
     heldBits: 0,
+    realDivision: false,
     hasVersion: false,
   };
 }

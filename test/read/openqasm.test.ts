@@ -292,6 +292,14 @@ describe('modifiers', () => {
     equal(unitary('qubit q; pow(0.5) @ x q;'), gateTable.get('sx')!.matrix([]));
   });
 
+  test('pow(1/2) is the square root, as the library of the standard writes it', () => {
+    equal(unitary('qubit q; pow(1/2) @ x q;'), gateTable.get('sx')!.matrix([]));
+    const text = `${HEAD}qubit q; pow(1/2) @ x q; rx(3/2) q;`;
+    const [root, turn] = readCircuit(text, 'p').circuit.operations as GateOperation[];
+    expect([root?.power, turn?.angles]).toEqual([0.5, [1]]);
+    expect(warningsOf(text)).toHaveLength(1);
+  });
+
   test('the order of modifiers counts: the nearest to the gate first', () => {
     // the inverse of x is x, whose principal root is sx; the inverse of the root is another matrix
     equal(unitary('qubit q; pow(0.5) @ inv @ x q;'), gateTable.get('sx')!.matrix([]));
