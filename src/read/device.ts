@@ -37,14 +37,32 @@ function parseJson(text: string, file: string): Json {
   try {
     return JSON.parse(text) as Json; // JSON.parse gives exactly this type
   } catch (error) {
-    // the engine's own text names the place in its own words; keep it, it is the best there is
     const reason = error instanceof Error ? error.message : String(error);
     throw new InputError({
       code: 'bad-json',
-      message: `expected a device as JSON, got text that is not JSON: ${reason}`,
+      message: `expected a device as JSON, got text that is not JSON: ${inOurWords(reason)}`,
       file,
+      ...placeOfJsonMistake(text, reason),
     });
   }
+}
+
+/** The engine's reason without its place, which is told as line and column. */
+function inOurWords(reason: string): string {
+  const short = reason
+    .replace(/(?: in JSON)? at (?:position|line) .*$/s, '')
+    .replace(/, ".*$/s, '');
+  return short.charAt(0).toLowerCase() + short.slice(1, 120);
+}
+
+/** Where JSON.parse stopped: engines name a position, or a line and a column, or (at the end) nothing. */
+function placeOfJsonMistake(text: string, reason: string): { line: number; column: number } {
+  const lineAndColumn = /line (\d+) column (\d+)/.exec(reason);
+  if (lineAndColumn) return { line: Number(lineAndColumn[1]), column: Number(lineAndColumn[2]) };
+  const position = /position (\d+)/.exec(reason);
+  const before = text.slice(0, position ? Number(position[1]) : text.length);
+  const lines = before.split('\n');
+  return { line: lines.length, column: (lines[lines.length - 1]?.length ?? 0) + 1 };
 }
 
 /** Collects problems while it walks the data; never throws. */

@@ -307,6 +307,15 @@ describe('readDevice', () => {
     expect(ring.resetError).toBe(0.01);
   });
 
+  test.each([
+    ['{ links: }', '1:3'],
+    ['{"links": [[0, 1]\n  , 3x]}', '2:6'],
+    ['{"links": [', '1:12'],
+    ['', '1:1'],
+  ])('text that is no JSON: %j has its place', (text, place) => {
+    expect(() => readDevice(text, 'valley.json')).toThrow(new RegExp(` at valley.json:${place}$`));
+  });
+
   test('every mistake is named, with the path of the value', () => {
     expect(problemsOf('{')[0]).toMatch(/^expected a device as JSON/);
     expect(problemsOf('[]')[0]).toBe('expected an object for the device, got []');
