@@ -175,10 +175,10 @@ class DeviceReader {
     }
     for (const key of Object.keys(item)) {
       if (keys.includes(key)) continue;
-      const near = nearestWord(key, keys);
+      const near = key.length > 60 ? undefined : nearestWord(key, keys);
       this.problem(
         'unknown-key',
-        `unknown key in ${path}: ${key}`,
+        `unknown key in ${path}: ${key.slice(0, 60)}`,
         near ? `did you mean ${near}?` : `known: ${keys.join(', ')}`,
       );
     }

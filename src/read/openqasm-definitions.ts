@@ -97,6 +97,7 @@ function checkBodyStatement(
     }
     if (!operands.some((known) => known.name === operand.name)) {
       const near = nearName(
+        r.problems,
         operand.name,
         operands.map((known) => known.name),
       );

@@ -78,7 +78,7 @@ function run(r: Reader, statement: Statement): void {
       runInclude(r, statement);
       break;
     case 'pragma':
-      warn(r.problems, statement.at, 'pragma', `pragma ignored: ${statement.text}`);
+      warn(r.problems, statement.at, 'pragma', `pragma ignored: ${statement.text.slice(0, 80)}`);
       break;
     case 'qubits':
     case 'bits':
@@ -140,7 +140,7 @@ function runVersion(r: Reader, statement: Of<'version'>): void {
 function runInclude(r: Reader, { at, file }: Of<'include'>): void {
   const expectedFile = r.parser.dialect === '3' ? 'stdgates.inc' : 'qelib1.inc';
   if (file !== expectedFile) {
-    const message = `including ${file} is not supported`;
+    const message = `including ${file.slice(0, 80)} is not supported`;
     fail(r.problems, at, 'not-supported', message, `only "${expectedFile}" is known here`);
   }
   if (r.parser.dialect === '3') {

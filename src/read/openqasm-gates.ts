@@ -75,6 +75,14 @@ function warnOfCu3(r: Reader, at: number): void {
   warn(r.problems, at, 'two-meanings', message);
 }
 
+/** The gates that a text may call: those of the standard, then its own. */
+function* gateNames(r: Reader): Generator<string> {
+  for (const { name, known } of gateTable.values()) {
+    if (known.includes(r.parser.dialect)) yield name;
+  }
+  yield* r.gates.keys();
+}
+
 function failUnknownGate(r: Reader, name: string, at: number, entry?: GateEntry): never {
   const meaning = lookUp(r, name);
   if (meaning)
@@ -95,8 +103,7 @@ function failUnknownGate(r: Reader, name: string, at: number, entry?: GateEntry)
       `${where} lacks it: define it with gate ${name} ... { ... }`,
     );
   }
-  const known = [...gateTable.values()].filter((e) => e.known.includes(dialect)).map((e) => e.name);
-  const near = nearName(name, [...r.gates.keys(), ...known]);
+  const near = nearName(r.problems, name, gateNames(r));
   const hint = near ? `did you mean ${near}?` : undefined;
   return fail(r.problems, at, 'unknown-gate', `unknown gate: ${name}`, hint);
 }

@@ -85,12 +85,15 @@ export function lookUp(r: Reader, name: string): Meaning | undefined {
   return undefined;
 }
 
+function* namesIn(scopes: readonly Map<string, Meaning>[]): Generator<string> {
+  for (let k = scopes.length - 1; k >= 0; k--) yield* scopes[k]!.keys();
+}
+
 /** Reports an unknown name once and remembers it as spoilt. */
 export function failUnknown(r: Reader, at: number, what: string, name: string): never {
   if (r.parser.spoilt.has(name)) abandon();
   r.parser.spoilt.add(name);
-  const known = r.scopes.flatMap((scope) => [...scope.keys()]);
-  const near = nearName(name, known);
+  const near = nearName(r.problems, name, namesIn(r.scopes));
   const hint = near ? `did you mean ${near}?` : undefined;
   return fail(r.problems, at, 'unknown-name', `unknown ${what}: ${name}`, hint);
 }

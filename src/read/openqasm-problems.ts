@@ -123,7 +123,25 @@ export function allProblems(problems: Problems): InputProblem[] {
   return list;
 }
 
-/** The known name that was probably meant; names of one letter resemble everything and get no advice. */
-export function nearName(name: string, known: Iterable<string>): string | undefined {
-  return name.length > 1 ? nearestWord(name, known) : undefined;
+/** Advice looks at so many known names, and only for names up to this length: it must stay cheap. */
+const ADVICE_NAMES_MAX = 500;
+const ADVICE_LENGTH_MAX = 40;
+
+/**
+ * The known name that was probably meant. Names of one letter resemble everything and get no advice, nor do
+ * mistakes that are not listed any more.
+ */
+export function nearName(
+  problems: Problems,
+  name: string,
+  known: Iterable<string>,
+): string | undefined {
+  if (name.length < 2 || name.length > ADVICE_LENGTH_MAX) return undefined;
+  if (problems.errors.length >= PROBLEMS_MAX) return undefined;
+  const some: string[] = [];
+  for (const word of known) {
+    if (Math.abs(word.length - name.length) < name.length) some.push(word);
+    if (some.length >= ADVICE_NAMES_MAX) break;
+  }
+  return nearestWord(name, some);
 }

@@ -104,8 +104,11 @@ function scanWord(s: Scanner, text: string, start: number): undefined {
   return settle(s, 'bad', character, start + character.length);
 }
 
+/** Longer names are refused: nobody reads them, and messages would have to show them. */
+const NAME_LENGTH_MAX = 256;
+
 function settle(s: Scanner, kind: WordKind, word: string, end: number): undefined {
-  s.kind = kind;
+  s.kind = kind === 'name' && word.length > NAME_LENGTH_MAX ? 'bad' : kind;
   s.word = word;
   s.end = end;
   s.position = end;
@@ -233,6 +236,10 @@ function refuseBad(s: Scanner): void {
   const { word, start } = s;
   if (word.startsWith('"') || word.startsWith("'")) {
     fail(s.problems, start, 'unterminated', `missing ${word[0]} to end the text that begins here`);
+  }
+  if (word.length > NAME_LENGTH_MAX && /^[\p{L}\p{Nl}_]/u.test(word)) {
+    const message = `names must have at most ${NAME_LENGTH_MAX} characters, got ${word.length}`;
+    fail(s.problems, start, 'too-large', message);
   }
   const what = /^[0-9.]/.test(word) ? 'number' : 'character';
   fail(s.problems, start, `bad-${what}`, `unknown ${what}: ${show(word)}`);

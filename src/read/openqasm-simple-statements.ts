@@ -39,7 +39,12 @@ export function parseVersion(p: Parser, at: number): Statement {
   advance(s);
   if (/^2(\.0)?$/.test(text)) p.dialect = '2.0';
   else if (!/^3(\.\d+)?$/.test(text)) {
-    report(s.problems, place, 'version', `expected version 2.0, 3.0 or 3.1, got ${text}`);
+    report(
+      s.problems,
+      place,
+      'version',
+      `expected version 2.0, 3.0 or 3.1, got ${text.slice(0, 40)}`,
+    );
     throw new Halted();
   }
   endStatement(s);

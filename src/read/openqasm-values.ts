@@ -169,7 +169,7 @@ function evaluateCall(r: Reader, node: Extract<Expression, { kind: 'call' }>): V
     return convert(r, name, evaluate(r, node.arguments[0]!), at, true);
   }
   const known = [...(isNew ? FUNCTIONS_3 : FUNCTIONS_2).keys(), ...(isNew ? ['pow', 'mod'] : [])];
-  const near = nearName(name, known);
+  const near = nearName(r.problems, name, known);
   if (r.parser.spoilt.has(name)) return failUnknown(r, at, 'function', name);
   const hint = near ? `did you mean ${near}?` : `known are ${known.join(', ')}`;
   return fail(r.problems, at, 'unknown-function', `unknown function: ${name}`, hint);

@@ -135,7 +135,23 @@ describe('hostile texts end in a clear message', () => {
       'qubit q; bit[100000] c; for int i in [0:100000] { c = ~c; }',
       'too-large',
     ],
-    ['a text that is one long word', 'x'.repeat(5_000_000), 'unexpected'],
+    ['a long file name', `include "${'x'.repeat(100_000)}";`, 'not-supported'],
+    ['a text that is one long word', 'x'.repeat(5_000_000), 'too-large'],
+    [
+      'long names that differ',
+      `qubit ${'x'.repeat(5_000_000)}; h ${'x'.repeat(5_000_000)}y;`,
+      'too-large',
+    ],
+    [
+      'many unknown names among many known ones',
+      `${Array.from({ length: 9000 }, (_, k) => `qubit gauge_at_weir_${k};`).join('')} ${Array.from({ length: 9000 }, (_, k) => `h gauge_at_wier_${k};`).join('')}`,
+      'unknown-name',
+    ],
+    [
+      'many unknown gates among many known ones',
+      `qubit q; ${Array.from({ length: 9000 }, (_, k) => `gate sluice_gate_${k} a { }`).join('\n')} ${Array.from({ length: 9000 }, (_, k) => `sluice_gaet_${k} q;`).join('')}`,
+      'unknown-gate',
+    ],
     ['a text of open brackets', '['.repeat(1_000_000), 'unexpected'],
     ['a text of open braces', '{'.repeat(1_000_000), 'unexpected'],
     ['a text of closing braces', '}'.repeat(100_000), 'unexpected'],
@@ -156,6 +172,11 @@ describe('hostile texts end in a clear message', () => {
     },
     20_000,
   );
+
+  test('a long version number', () => {
+    const outcome = outcomeOf(`OPENQASM 7.${'0'.repeat(100_000)};`);
+    expect(outcome).toMatchObject({ codes: ['version'] });
+  });
 
   test.each<[string, string, number]>([
     ['a sum of 50,000 terms', `qubit q; rx(${'1+'.repeat(50_000)}1) q;`, 1],
