@@ -435,7 +435,7 @@ function gateNamed(name: string, args: readonly Value[]): Value {
     const near = nearestWord(name, known);
     return fail(
       'unknown-name',
-      `unknown name in an expression: ${name}`,
+      `unknown name in an expression: ${name.slice(0, 60)}`,
       near && `did you mean ${near}?`,
     );
   }
