@@ -13,6 +13,8 @@ export type Register = {
   size: number;
   /** Declared without a size (`qubit a;`), so that it is written without an index. */
   scalar: boolean;
+  /** Bits that only keep a value for a later condition: no outputs of the program. */
+  hidden?: true;
 };
 
 /** A boolean expression over classical bits: the condition of an operation, or a value assigned. */
@@ -131,6 +133,15 @@ export function unitaryGate(
 export function circuitOfUnitary(matrix: Float64Array, wires: number, name: string): Circuit {
   const all = Array.from({ length: wires }, (_, k) => k);
   return { ...emptyCircuit(wires, 0, name), operations: [unitaryGate(matrix, all)] };
+}
+
+/** The bits that are outputs of the program: all but those of hidden registers, ascending. */
+export function visibleBits(circuit: Circuit): number[] {
+  const isHidden = new Uint8Array(circuit.bits);
+  for (const { first, size, hidden } of circuit.bitRegisters) {
+    if (hidden) isHidden.fill(1, first, first + size);
+  }
+  return Array.from({ length: circuit.bits }, (_, bit) => bit).filter((bit) => !isHidden[bit]);
 }
 
 /** `q[2]`, or the register's bare name where it is scalar. */

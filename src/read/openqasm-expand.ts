@@ -229,7 +229,8 @@ function runDeclaration(
     r.wires += size;
     return;
   }
-  addBits(r, name.name, size, scalar);
+  const isHidden = statement.annotations?.includes(HIDDEN) ?? false;
+  addBits(r, name.name, size, scalar, isHidden);
   if (statement.kind === 'bits' && statement.value) {
     const target: Operand = { at: name.at, name: name.name, indices: [] };
     runAssign(
@@ -239,6 +240,9 @@ function runDeclaration(
     );
   }
 }
+
+/** The annotation of registers that only keep values for later conditions. */
+const HIDDEN = 'wiregauge.hidden';
 
 function runAlias(r: Reader, { at, name, parts }: Of<'alias'>): void {
   const kind = lookUp(r, parts[0]!.name)?.kind === 'bits' ? 'bits' : 'qubits';

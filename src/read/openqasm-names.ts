@@ -116,15 +116,21 @@ export function holdBit(r: Reader, at: number): number {
   let name: string;
   do name = `held_${r.heldBits++}`;
   while (lookUp(r, name));
-  const bit = addBits(r, name, 1, true);
+  const bit = addBits(r, name, 1, true, true);
   r.scopes[0]!.set(name, { kind: 'bits', places: [bit], scalar: true });
   return bit;
 }
 
 /** Adds a bit register; returns the number of its first bit. */
-export function addBits(r: Reader, name: string, size: number, scalar: boolean): number {
+export function addBits(
+  r: Reader,
+  name: string,
+  size: number,
+  scalar: boolean,
+  isHidden = false,
+): number {
   const first = r.bits;
-  r.bitRegisters.push({ name, first, size, scalar });
+  r.bitRegisters.push({ name, first, size, scalar, ...(isHidden ? { hidden: true } : {}) });
   r.bits += size;
   return first;
 }

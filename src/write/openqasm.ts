@@ -58,7 +58,8 @@ function declarations(circuit: Circuit, language: '2.0' | '3'): string[] {
     [circuit.qubitRegisters, 'qubit', 'qreg'],
     [circuit.bitRegisters, 'bit', 'creg'],
   ] as const) {
-    for (const { name, size, scalar } of registers) {
+    for (const { name, size, scalar, hidden } of registers) {
+      if (hidden) lines.push(`${language === '3' ? '' : '// '}@wiregauge.hidden`);
       if (language === '2.0') lines.push(`${oldWord} ${name}[${size}];`);
       else lines.push(scalar ? `${word} ${name};` : `${word}[${size}] ${name};`);
     }

@@ -4,6 +4,7 @@ import {
   type Circuit,
   type GateOperation,
   type Operation,
+  visibleBits,
   wireName,
 } from '../../src/circuit/circuit.ts';
 import { gateTable } from '../../src/circuit/gates.ts';
@@ -509,6 +510,14 @@ describe('conditions', () => {
     expect(saying(read('qubit q; bit c; if (c) { c = measure q; }'))).toEqual([
       'if c: c = measure q',
     ]);
+  });
+
+  test('the bit that keeps a condition is hidden: no output of the program', () => {
+    const circuit = read('qubit[2] q; bit c; if (c) { c = measure q[0]; x q[1]; }');
+    expect(circuit.bitRegisters[1]).toMatchObject({ name: 'held_0', hidden: true });
+    expect(visibleBits(circuit)).toEqual([0]);
+    const declared = read('qubit q;\n@wiregauge.hidden\nbit[2] kept; bit c;');
+    expect(visibleBits(declared)).toEqual([2]);
   });
 
   test('constant conditions choose at once; a comparison that cannot hold is warned of', () => {

@@ -243,6 +243,14 @@ c[1] = c[0] ^ c[1];
     expect(bare(again(c))).toEqual(bare(c));
   });
 
+  test('hidden registers stay hidden', () => {
+    const hidden = { name: 'kept', first: 1, size: 2, scalar: false, hidden: true } as const;
+    const plain = emptyCircuit(1, 1);
+    const c: Circuit = { ...plain, bits: 3, bitRegisters: [...plain.bitRegisters, hidden] };
+    expect(writeCircuit(c)).toContain('bit[1] c;\n@wiregauge.hidden\nbit[2] kept;');
+    expect(bare(again(c))).toEqual(bare(c));
+  });
+
   test('names that the language needs for itself are changed', () => {
     const c: Circuit = {
       ...emptyCircuit(2, 1),
