@@ -2,7 +2,13 @@
  * Says what is looked at when two circuits are compared: inputs and outputs by the wires of the original, its bits,
  * and where each of them is in the other circuit.
  */
-import { type BitExpression, bitName, type Circuit, wireName } from '../circuit/circuit.ts';
+import {
+  type BitExpression,
+  bitName,
+  type Circuit,
+  visibleBits,
+  wireName,
+} from '../circuit/circuit.ts';
 import type { Contract } from '../contract.ts';
 import { InputError } from '../input-error.ts';
 import type { Unfolded } from './unfold.ts';
@@ -31,12 +37,13 @@ export function observation(
   const virtual = wires.filter(
     (wire) => contract.outputs[wire] === 'measured' && !intoBits.has(wire),
   );
+  const visible = visibleBits(original);
   const partner = matchBits(original, rewritten);
   const names = {
     inputs: anyInputs.map((wire) => wireName(original, wire)),
     outputs: kept.map((wire) => wireName(original, wire)),
     bits: [
-      ...Array.from({ length: original.bits }, (_, bit) => bitName(original, bit)),
+      ...visible.map((bit) => bitName(original, bit)),
       ...virtual.map((wire) => wireName(original, wire)),
     ],
     hasZeroInputs: anyInputs.length < wires.length,
@@ -46,9 +53,7 @@ export function observation(
     kept,
     of: (unfolded, side, relabelling) => {
       const place = (wire: number): number => unfolded.outputAxis[relabelling?.[wire] ?? wire]!;
-      const own = Array.from({ length: original.bits }, (_, bit) =>
-        side === 'original' ? unfolded.bits[bit]! : unfolded.bits[partner[bit]!]!,
-      );
+      const own = (side === 'original' ? visible : partner).map((bit) => unfolded.bits[bit]!);
       const missing = virtual.find((wire) => place(wire) < 0);
       if (missing !== undefined) {
         throw new InputError({
@@ -75,14 +80,17 @@ function measuredWires(circuit: Circuit): Set<number> {
   return found;
 }
 
-/** For every bit of the original the bit of the rewritten circuit: of the same name, else of the same number. */
+/**
+ * For every bit of the original that is an output the bit of the rewritten circuit: of the same name, else of the
+ * same number among those.
+ */
 function matchBits(original: Circuit, rewritten: Circuit): number[] {
-  const byName = new Map<string, number>();
-  for (let bit = 0; bit < rewritten.bits; bit++) byName.set(bitName(rewritten, bit), bit);
-  const names = Array.from({ length: original.bits }, (_, bit) => bitName(original, bit));
+  const others = visibleBits(rewritten);
+  const byName = new Map(others.map((bit) => [bitName(rewritten, bit), bit]));
+  const names = visibleBits(original).map((bit) => bitName(original, bit));
   const isByName = names.some((name) => byName.has(name));
-  return names.map((name, bit) => {
-    const found = isByName ? byName.get(name) : bit < rewritten.bits ? bit : undefined;
+  return names.map((name, index) => {
+    const found = isByName ? byName.get(name) : others[index];
     if (found === undefined) {
       throw new InputError({
         code: 'missing-bit',
