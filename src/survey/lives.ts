@@ -27,7 +27,14 @@ export type Life = {
 };
 
 /** An operation on carriers, or the end of a carrier (`end` >= 0); a measurement of the file may be an end. */
-export type LifeNode = { operation: Operation | null; end: number };
+export type LifeNode = { operation: Operation | null; end: number; window?: LifeWindow };
+
+/** Several gates taken as one, of which is known which of its outputs need which of its inputs. */
+export type LifeWindow = {
+  carriers: readonly number[];
+  /** needs[k]: places in `carriers` whose input the k-th carrier needs. */
+  needs: readonly (readonly number[])[];
+};
 
 export type LifeCircuit = {
   lives: readonly Life[];

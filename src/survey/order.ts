@@ -37,22 +37,35 @@ function walkGroups(
   const { lives, nodes } = circuit;
   const lastOther = rules.commute ? null : lastNonZ(circuit, axesOf);
   const open: (Axis | undefined)[] = new Array(lives.length).fill(undefined);
-  nodes.forEach(({ operation, end }, node) => {
+  /** Per carrier: its open group holds a measurement. */
+  const measures = new Uint8Array(lives.length);
+  const lastWriter = new Int32Array(circuit.bits).fill(-1);
+  nodes.forEach(({ operation }, node) => {
+    const written = operation ? bitWritten(operation) : -1;
+    if (written >= 0) lastWriter[written] = node;
+  });
+  nodes.forEach(({ operation, end, window }, node) => {
     if (end >= 0) {
       const axis = open[end];
-      const isMeasured = lives[end]!.rule === 'measured';
-      visit.end(node, end, rules.early && isMeasured && axis !== undefined && isZ(axis));
+      const { rule, bit } = lives[end]!;
+      // what is left over becomes conditions on the bit: it must keep its value, and only gates can be conditioned
+      const isKept = bit < 0 || lastWriter[bit] === node;
+      const isEarly = rule === 'measured' && isKept && !measures[end] && axis !== undefined;
+      visit.end(node, end, rules.early && isEarly && isZ(axis));
       return;
     }
-    if (!operation) return;
-    const axes = axesOf(operation);
-    const carriers = operationWires(operation);
+    const carriers = window?.carriers ?? (operation ? operationWires(operation) : []);
+    if (!operation && !window) return;
+    // what a window becomes is not known yet: it commutes with nothing
+    const axes: readonly Axis[] = operation ? axesOf(operation) : carriers.map(() => 'none');
     const opensGroup = carriers.map((carrier, place) => {
       const axis = axes[place]!;
       const group = open[carrier];
       const mayJoin = rules.commute || (rules.early && node > lastOther![carrier]!);
       const joins = group !== undefined && mayJoin && sameAxis(group, axis);
       if (!joins || group === 'all') open[carrier] = axis;
+      if (!joins) measures[carrier] = 0;
+      if (operation?.kind === 'measure') measures[carrier] = 1;
       return !joins;
     });
     visit.operation(node, carriers, opensGroup);
@@ -93,6 +106,16 @@ export function closureRelation(
   const closure = new Uint32Array(words);
   walkGroups(circuit, rules, axesOf, {
     operation(node, carriers, opensGroup) {
+      const { window } = circuit.nodes[node]!;
+      if (window) {
+        for (const carrier of carriers) before[carrier]!.set(withOpen[carrier]!);
+        window.needs.forEach((places, k) => {
+          const out = withOpen[carriers[k]!]!;
+          out.fill(0);
+          for (const place of places) unite(out, before[carriers[place]!]!);
+        });
+        return;
+      }
       closure.fill(0);
       carriers.forEach((carrier, k) => {
         if (opensGroup[k]) before[carrier]!.set(withOpen[carrier]!);
