@@ -37,12 +37,39 @@ describe('Matrix Market', () => {
     expect([...matrix]).toEqual([1, 3, 2, 4, 0, 0, 0, 0]);
   });
 
+  test('coordinate files give entries with their places; the rest is 0', () => {
+    const text =
+      '%%MatrixMarket matrix coordinate complex general\n2 2 3\n1 1 1 0\n2 2 0 -1\n1 2 0.5 2\n';
+    const { matrix } = readMatrixMarket(text, 's.mtx');
+    expect([...matrix]).toEqual([1, 0.5, 0, 0, 0, 2, 0, -1]);
+    const real = readMatrixMarket(
+      '%%MatrixMarket matrix coordinate real general\n2 2 1\n2 1 7\n',
+      's',
+    );
+    expect([...real.matrix]).toEqual([0, 0, 7, 0, 0, 0, 0, 0]);
+  });
+
+  const SPARSE = '%%MatrixMarket matrix coordinate real general\n2 2 2\n';
+  test.each([
+    [`${SPARSE}1 1 1\n`, 'expected 2 entries, got 1 at m.mtx:3:6'],
+    [`${SPARSE}1 1 1\n1 1 2\n`, 'expected each entry once, got row 1, column 1 again at m.mtx:4:1'],
+    [`${SPARSE}1 3 1\n`, 'column must be in [1, 2], got 3 at m.mtx:3:3'],
+    [`${SPARSE}0 1 1\n`, 'row must be in [1, 2], got 0 at m.mtx:3:1'],
+    [`${SPARSE}1 1 1\n2 2 1\n1 2 1\n`, 'expected 2 entries and no more, got 1 at m.mtx:5:1'],
+    [
+      `${SPARSE.replace('2 2 2', '2 2 5')}`,
+      'number of entries must be in [0, 4], got 5 at m.mtx:2:5',
+    ],
+  ])('sparse: %j', async (text, message) => {
+    expect(await messageOf(() => readMatrixMarket(text, 'm.mtx'))).toContain(message);
+  });
+
   test.each([
     ['', 'expected %%MatrixMarket, got an empty line at m.mtx:1:1'],
     ['1 2', 'expected %%MatrixMarket, got 1 2 at m.mtx:1:1'],
     [
-      '%%MatrixMarket matrix coordinate complex general\n',
-      'expected array, got coordinate at m.mtx:1:23',
+      '%%MatrixMarket matrix list complex general\n',
+      'expected array or coordinate, got list at m.mtx:1:23',
     ],
     [
       '%%MatrixMarket matrix array complex\n',
