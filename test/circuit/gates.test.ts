@@ -91,7 +91,9 @@ describe.each(ENTRIES)('$name', (entry) => {
     }
   });
 
-  test.runIf(entry.generator)('generators are the derivatives', () => {
+  if (!entry.generator) return;
+
+  test('generators are the derivatives', () => {
     const step = 1e-5;
     for (const angles of rounds) {
       const generators = entry.generator?.(angles) ?? [];
