@@ -21,6 +21,7 @@ import { type OrderGraph, orderGraph } from '../survey/order.ts';
 import { inputsOf, type Relation } from '../survey/relation.ts';
 import { restrictGate } from '../survey/restrict.ts';
 import type { WireEvent } from './assemble.ts';
+import { unmerged } from './blocks.ts';
 import { MinimumHeap } from './minimum-heap.ts';
 
 export type SchedulePlan = {
@@ -218,7 +219,7 @@ class Scheduling {
   private withConditions(operation: Operation): Operation[] {
     if (operation.kind !== 'gate') return [operation];
     const gone = operation.wires.filter((carrier) => this.ended[carrier]);
-    if (gone.length === 0) return [operation];
+    if (gone.length === 0) return unmerged(operation);
     const { condition, ...bare } = operation;
     let parts: { gate: GateOperation; bits: BitExpression[] }[] = [
       { gate: bare, bits: condition ? [condition] : [] },

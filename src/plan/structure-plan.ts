@@ -4,15 +4,17 @@
  */
 import type { AssignOperation, Circuit } from '../circuit/circuit.ts';
 import type { Contract } from '../contract.ts';
+import { simplifyBoundary } from '../survey/boundary.ts';
 import {
   ALL_RULES,
   type StructureOfLives,
   type StructureRules,
   structureOf,
 } from '../survey/early.ts';
-import { orderGraph } from '../survey/order.ts';
+import { closureRelation, orderGraph } from '../survey/order.ts';
 import { planWidth, type WidthPlan } from '../survey/width.ts';
 import { assembleWires, type NarrowedCircuit } from './assemble.ts';
+import { mergeBlocks } from './blocks.ts';
 import { type Schedule, type SchedulePlan, schedule } from './schedule.ts';
 
 export type StructurePlan = {
@@ -31,19 +33,41 @@ export function planStructure(
   rules: Partial<StructureRules> = {},
 ): StructurePlan {
   const all = { ...ALL_RULES, ...rules };
-  const structure = structureOf(original, contract, all);
+  const plain = structureOf(original, contract, all);
+  const width = planWidth(plain.relation);
+  const merged = all.commute ? withBlocks(plain, all) : plain;
+  const mergedWidth = merged === plain ? width : planWidth(merged.relation);
+  const isBetter = mergedWidth.width < width.width;
+  const structure = isBetter ? merged : plain;
   const { circuit, relation, axesOf } = structure;
   const bitOf = (carrier: number): number => {
     const { bit, output } = circuit.lives[carrier]!;
     return bit >= 0 ? bit : original.bits + output;
   };
+  const notes = rulesUsed(structure);
+  if (isBetter) notes.push('commutation: some neighbouring gates taken together');
   return {
     original,
     contract,
     structure,
     scheduling: { circuit, relation, graph: orderGraph(circuit, all, axesOf), bitOf },
-    width: planWidth(relation),
-    notes: rulesUsed(structure),
+    width: isBetter ? mergedWidth : width,
+    notes,
+  };
+}
+
+/** With gates taken together where the whole commutes with more; the same object when there is nothing to take. */
+function withBlocks(plain: StructureOfLives, rules: StructureRules): StructureOfLives {
+  const { axesOf } = plain;
+  const merged = mergeBlocks(plain.circuit, axesOf);
+  if (merged === plain.circuit) return plain;
+  const ends = { zero: false, dead: rules.dead, xor: false };
+  const { circuit, used } = simplifyBoundary(merged, ends, axesOf);
+  return {
+    ...plain,
+    circuit,
+    used: { ...plain.used, dead: plain.used.dead + used.dead },
+    relation: closureRelation(circuit, rules, axesOf),
   };
 }
 

@@ -72,14 +72,14 @@ export function findWindows(
   return found;
 }
 
-type Lines = {
+export type Lines = {
   /** Nodes on each carrier, in order. */
   nodes: readonly (readonly number[])[];
   /** Place of each node on its carriers, by node and operand. */
   places: readonly (readonly number[])[];
 };
 
-function linesOf({ lives, nodes }: LifeCircuit): Lines {
+export function linesOf({ lives, nodes }: LifeCircuit): Lines {
   const onCarrier: number[][] = lives.map(() => []);
   const places = nodes.map(({ operation, end, window }, node) => {
     if (end >= 0) return [];
@@ -90,14 +90,14 @@ function linesOf({ lives, nodes }: LifeCircuit): Lines {
 }
 
 /** A gate that always happens. */
-function isGate(
+export function isGate(
   node: LifeNode,
 ): node is LifeNode & { operation: { kind: 'gate' } & NonNullable<LifeNode['operation']> } {
   return node.operation?.kind === 'gate' && !node.operation.condition;
 }
 
 /** The gate's own carriers, widened step by step by carriers of gates next to them. */
-function carrierSets(
+export function carrierSets(
   circuit: LifeCircuit,
   lines: Lines,
   start: number,
@@ -167,37 +167,61 @@ function grow(
   start: number,
   carriers: readonly number[],
 ): number[] {
-  const inside = new Set(carriers);
+  const after = growAlong(circuit, lines, start, carriers, 1, GATES_MAX);
+  const before = growAlong(circuit, lines, start, carriers, -1, GATES_MAX);
+  return [...before, ...after].sort((a, b) => a - b);
+}
+
+/** The gates from `start` on that can happen as one, in order; nodes marked in `taken` stay outside. */
+export function growForward(
+  circuit: LifeCircuit,
+  lines: Lines,
+  start: number,
+  carriers: readonly number[],
+  gatesMax: number,
+  taken: Uint8Array,
+): number[] {
+  return growAlong(circuit, lines, start, carriers, 1, gatesMax, taken);
+}
+
+function growAlong(
+  circuit: LifeCircuit,
+  lines: Lines,
+  start: number,
+  carriers: readonly number[],
+  step: 1 | -1,
+  gatesMax: number,
+  taken?: Uint8Array,
+): number[] {
   const nodes: number[] = [];
-  for (const step of [1, -1]) {
-    const at = carriers.map((carrier) => {
-      const place = placeFrom(lines.nodes[carrier]!, start);
-      return step > 0 ? place : place - 1;
+  const at = carriers.map((carrier) => {
+    const place = placeFrom(lines.nodes[carrier]!, start);
+    return step > 0 ? place : place - 1;
+  });
+  const isBlocked = carriers.map(() => false);
+  for (;;) {
+    // the nearest node on any carrier that is still open
+    let next = -1;
+    carriers.forEach((carrier, k) => {
+      const node = isBlocked[k] ? undefined : lines.nodes[carrier]![at[k]!];
+      if (node !== undefined && (next < 0 || (node - next) * step < 0)) next = node;
     });
-    const isBlocked = carriers.map(() => false);
-    for (;;) {
-      // the nearest node on any carrier that is still open
-      let next = -1;
-      carriers.forEach((carrier, k) => {
-        const node = isBlocked[k] ? undefined : lines.nodes[carrier]![at[k]!];
-        if (node !== undefined && (next < 0 || (node - next) * step < 0)) next = node;
-      });
-      if (next < 0 || nodes.length >= GATES_MAX) break;
-      const node = circuit.nodes[next]!;
-      const own = node.window?.carriers ?? operationWires(node.operation!); // on a line: not an end
-      const joins =
-        isGate(node) &&
-        own.every((carrier) => inside.has(carrier) && !isBlocked[carriers.indexOf(carrier)]);
-      if (joins) nodes.push(next);
-      for (const carrier of own) {
-        const k = carriers.indexOf(carrier);
-        if (k < 0) continue;
-        if (!joins) isBlocked[k] = true;
-        at[k]! += step;
-      }
+    if (next < 0 || nodes.length >= gatesMax) return nodes;
+    const node = circuit.nodes[next]!;
+    const own = node.window?.carriers ?? operationWires(node.operation!); // on a line: not an end
+    const isOpen = own.every((carrier) => {
+      const k = carriers.indexOf(carrier);
+      return k >= 0 && !isBlocked[k];
+    });
+    const joins = isOpen && isGate(node) && !taken?.[next];
+    if (joins) nodes.push(next);
+    for (const carrier of own) {
+      const k = carriers.indexOf(carrier);
+      if (k < 0) continue;
+      if (!joins) isBlocked[k] = true;
+      at[k]! += step;
     }
   }
-  return [...new Set(nodes)].sort((a, b) => a - b);
 }
 
 /** Takes gates off both ends of a window as long as its gain stays: what is left overlaps less with others. */

@@ -59,7 +59,32 @@ export function restrictGate(
   const named = candidates(operation, place, rest).find((candidate) =>
     isSame(gateMatrix(candidate), block),
   );
-  return named ?? { ...kept(operation), ...unitaryGate(block, rest, `${operation.name}_part`) };
+  return named ?? { ...kept(operation), ...diagonalOr(block, rest, `${operation.name}_part`) };
+}
+
+/** A gate for a matrix; with a body of Rz and Rzz where it is diagonal, so that it can be written. */
+function diagonalOr(block: Float64Array, wires: number[], label: string): GateOperation {
+  const d = 2 ** wires.length;
+  const phases: number[] = [];
+  let rest = 0;
+  for (let i = 0; i < d; i++) {
+    for (let j = 0; j < d; j++) {
+      const [re, im] = [block[i * d + j]!, block[d * d + i * d + j]!];
+      if (i === j) phases.push(Math.atan2(im, re));
+      else rest += re * re + im * im;
+    }
+  }
+  const plain = unitaryGate(block, wires, label);
+  if (rest > SAME_GATE || wires.length > 2) return plain;
+  const [p = 0, q = 0, r = 0, s = 0] = phases;
+  if (wires.length === 1) return gate('rz', wires, q - p);
+  // phase of |st>, s and t = 1 or -1: -(a s + b t + c s t) / 2 up to a common one
+  const operations = [
+    gate('rz', [0], (r + s - p - q) / 2),
+    gate('rz', [1], (q + s - p - r) / 2),
+    gate('rzz', [0, 1], (q + r - p - s) / 2),
+  ];
+  return { ...plain, definition: { operations, phase: (p + q + r + s) / 4 } };
 }
 
 /** Condition and position stay with what remains. */
