@@ -211,6 +211,16 @@ describe('rules at the boundary', () => {
 });
 
 describe('programs that measure, reset and decide on the way', () => {
+  test('a flip under a condition leaves the value unknown', () => {
+    const operations: Operation[] = [
+      gate('h', [0]),
+      measure(0, 0),
+      { ...gate('x', [1]), condition: { kind: 'bit', bit: 0 } },
+      gate('crx', [1, 2], 1.2),
+      measure(2, 1),
+    ];
+    checked(program(3, 2, operations));
+  });
   test('a wire that is reset twice can be three wires or one', () => {
     const operations: Operation[] = [];
     for (let round = 0; round < 3; round++) {
