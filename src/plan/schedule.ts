@@ -17,12 +17,12 @@ import {
 } from '../circuit/circuit.ts';
 import type { AxisFinder } from '../survey/axes.ts';
 import type { LifeCircuit } from '../survey/lives.ts';
+import { MinimumHeap } from '../survey/minimum-heap.ts';
 import { type OrderGraph, orderGraph } from '../survey/order.ts';
 import { inputsOf, type Relation } from '../survey/relation.ts';
 import { restrictGate } from '../survey/restrict.ts';
 import type { WireEvent } from './assemble.ts';
 import { unmerged } from './blocks.ts';
-import { MinimumHeap } from './minimum-heap.ts';
 
 export type SchedulePlan = {
   circuit: LifeCircuit;

@@ -1,135 +1,46 @@
 /**
- * Chooses the windows whose reshaping lets the whole circuit do with fewer wires.
+ * Plans a circuit with windows to be reshaped, and takes in what the windows have become.
  *
- * Taking a window as one gate of which only the influence counts can only loosen the relation between carriers, so
- * compatible windows (no common gate, no cycle between them) are taken greedily, in several orders of preference; the
- * windows without which the width stays the same are given back, the longest first.
  * A plan of the whole is a nested order, so it induces one on each window: its outputs in the order in which they are
  * first needed. Each window can be factored along that order (`order`, `needs` are a plan for the chain
  * factorisation), and the whole then has the width told here.
- * Cost: linear in windows times nodes, and one width plan for each window taken.
+ * To use it: `planStructure`, `planWindows`, make gates of each window, `withWindows`, and go on as with any plan.
  */
 import { type GateOperation, operationWires } from '../circuit/circuit.ts';
+import { contracted } from '../survey/contracted.ts';
 import type { Life, LifeCircuit, LifeNode } from '../survey/lives.ts';
 import { closureRelation, type OrderRules, orderGraph } from '../survey/order.ts';
-import { bitCount, type Relation } from '../survey/relation.ts';
-import { planWidth, type WidthPlan } from '../survey/width.ts';
-import { contracted } from './contracted.ts';
+import { planWidth } from '../survey/width.ts';
+import type { WindowCandidate } from '../survey/window-search.ts';
+import {
+  chooseWindows,
+  WINDOW_RULES,
+  type WindowChoice,
+  type WindowOptions,
+} from '../survey/windows.ts';
 import type { StructurePlan } from './structure-plan.ts';
-import { findWindows, type WindowCandidate, type WindowSearchOptions } from './window-search.ts';
 
 export type Window = WindowCandidate & {
   /** Places in `carriers`, in the order in which their outputs are first needed. */
   order: number[];
 };
 
-export type WindowPlan = {
+export type WindowPlan = Omit<WindowChoice, 'windows'> & {
   windows: Window[];
-  /** Carriers x carriers, with the influence of the windows in place of their structure. */
-  relation: Relation;
-  width: WidthPlan;
   /** The width without windows. */
   structuralWidth: number;
-  /** How many windows had an influence sparser than their structure. */
-  candidates: number;
 };
-
-export type WindowOptions = WindowSearchOptions & {
-  rules?: OrderRules;
-  /** Effort for each width plan on the way, in million steps. */
-  effort?: number;
-};
-
-const RULES: OrderRules = { commute: true, early: true };
-const EFFORT = 5;
-const EXCHANGES_MAX = 60;
-/** Preferences: by gain, by few carriers, by short length, by gain for each gate. */
-const PREFERENCES: readonly ((a: WindowCandidate, b: WindowCandidate) => number)[] = [
-  (a, b) => b.gain - a.gain || a.nodes.length - b.nodes.length,
-  (a, b) => a.carriers.length - b.carriers.length || b.gain - a.gain,
-  (a, b) => b.gain / b.nodes.length - a.gain / a.nodes.length,
-];
 
 /** The fewest wires with the fewest windows found; no windows when structure does as well. */
 export function planWindows(plan: StructurePlan, options: WindowOptions = {}): WindowPlan {
-  const { rules = RULES, effort = EFFORT, stopped = () => false } = options;
-  const { circuit, axesOf } = plan.structure;
-  const candidates = findWindows(circuit, axesOf, options);
-  const relationWith = (chosen: readonly WindowCandidate[]): Relation => {
-    const whole = contracted(circuit, chosen);
-    return closureRelation(whole ?? circuit, rules, axesOf);
-  };
-  let best: WindowCandidate[] = [];
-  let bestPlan = plan.width;
-  let bestRelation = plan.structure.relation;
-  for (const preference of PREFERENCES) {
-    if (stopped() || candidates.length === 0) break;
-    const sorted = candidates
-      .map((candidate, k) => ({ candidate, k }))
-      .sort((a, b) => preference(a.candidate, b.candidate) || a.k - b.k);
-    const chosen = compatible(
-      circuit,
-      sorted.map(({ candidate }) => candidate),
-    );
-    const relation = relationWith(chosen);
-    const width = planWidth(relation, { effort });
-    const isBetter =
-      width.width < bestPlan.width ||
-      (width.width === bestPlan.width && best.length > 0 && lengthOf(chosen) < lengthOf(best));
-    if (isBetter) [best, bestPlan, bestRelation] = [chosen, width, relation];
-  }
-  // put in one that was left out, and leave out those that are in its way
-  const left = candidates.map((candidate, k) => ({ candidate, k }));
-  left.sort((a, b) => PREFERENCES[2]!(a.candidate, b.candidate) || a.k - b.k);
-  for (const { candidate } of left.slice(0, EXCHANGES_MAX)) {
-    if (stopped()) break;
-    if (best.includes(candidate)) continue;
-    const chosen = compatible(circuit, [candidate, ...best]);
-    const relation = relationWith(chosen);
-    if (tiesOf(relation) > tiesOf(bestRelation)) continue;
-    const width = planWidth(relation, { effort });
-    if (width.width < bestPlan.width) [best, bestPlan, bestRelation] = [chosen, width, relation];
-  }
-  // give back what is not needed
-  for (const candidate of [...best].sort((a, b) => b.nodes.length - a.nodes.length)) {
-    if (stopped()) break;
-    const fewer = best.filter((other) => other !== candidate);
-    const relation = relationWith(fewer);
-    const width = planWidth(relation, { effort });
-    if (width.width <= bestPlan.width) [best, bestPlan, bestRelation] = [fewer, width, relation];
-  }
+  const { rules = WINDOW_RULES } = options;
+  const choice = chooseWindows(plan.structure, plan.width, options);
+  const { circuit } = plan.structure;
   return {
-    windows: withOrders(circuit, best, bestPlan.order, rules, plan),
-    relation: bestRelation,
-    width: bestPlan,
+    ...choice,
+    windows: withOrders(circuit, choice.windows, choice.width.order, rules, plan),
     structuralWidth: plan.width.width,
-    candidates: candidates.length,
   };
-}
-
-/** How many pairs of carriers a relation ties. */
-function tiesOf({ rows }: Relation): number {
-  return rows.reduce((sum, row) => sum + bitCount(row), 0);
-}
-
-const lengthOf = (windows: readonly WindowCandidate[]): number =>
-  windows.reduce((sum, { nodes }) => sum + nodes.length, 0);
-
-/** Takes windows in turn, as long as no gate is in two and no two wait for each other. */
-function compatible(
-  circuit: LifeCircuit,
-  candidates: readonly WindowCandidate[],
-): WindowCandidate[] {
-  const taken = new Uint8Array(circuit.nodes.length);
-  let chosen: WindowCandidate[] = [];
-  for (const candidate of candidates) {
-    if (candidate.nodes.some((node) => taken[node])) continue;
-    const more = [...chosen, candidate];
-    if (!contracted(circuit, more)) continue;
-    chosen = more;
-    for (const node of candidate.nodes) taken[node] = 1;
-  }
-  return chosen;
 }
 
 /** For every window the order in which the plan first needs its outputs. */
@@ -205,7 +116,7 @@ export function withWindows(
   plan: StructurePlan,
   windows: readonly Window[],
   replacements: readonly Replacement[],
-  rules: OrderRules = RULES,
+  rules: OrderRules = WINDOW_RULES,
 ): StructurePlan {
   const { structure, original } = plan;
   const whole = contracted(structure.circuit, windows);

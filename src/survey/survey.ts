@@ -8,38 +8,32 @@
 import type { Circuit } from '../circuit/circuit.ts';
 import { contractOf } from '../circuit/contract.ts';
 import { countCircuit } from '../circuit/counts.ts';
-import { applyGateInto, circuitUnitary } from '../circuit/unitary.ts';
-import { type Contract, type ContractOptions, contractName } from '../contract.ts';
-import { type Control, freeRunning } from '../control.ts';
+import { applyGateInto } from '../circuit/unitary.ts';
+import { type Contract, contractName } from '../contract.ts';
+import { freeRunning } from '../control.ts';
 import type { HowSure, Pair, SurveyReport, WidthRow } from '../reports.ts';
 import { structureOf } from './early.ts';
-import { INFLUENCE_WIRES_MAX, influenceFloor, influenceTables } from './influence.ts';
 import { commutedRelation, structuralRelation } from './light-cones.ts';
 import { livesOf } from './lives.ts';
 import { closureRelation } from './order.ts';
-import { PROBE_FLOOR, PROBE_WIRES_MAX, probeTables } from './probes.ts';
-import {
-  emptyRelation,
-  type Relation,
-  relate,
-  relates,
-  relationFromTable,
-  relationMatrix,
-} from './relation.ts';
+import { type Relation, relates, relationFromTable, relationMatrix } from './relation.ts';
 import { STATE_WIDTH_WIRES_MAX, stateWidth } from './state-width.ts';
+import {
+  type CausalPart,
+  causalPart,
+  type InfluencePart,
+  shownTable,
+  surveyInfluence,
+  windowsPart,
+} from './survey-influence.ts';
+import type { SurveyOptions } from './survey-options.ts';
 import { unitaryPart } from './unitary-part.ts';
 import { planWidth, type WidthPlan } from './width.ts';
 
-export type SurveyOptions = ContractOptions & {
-  seed?: number;
-  /** Probe influence with states on up to this many wires; 16 unless given, 0 never. */
-  probeWiresMax?: number;
-  control?: Control;
-};
+export type { SurveyOptions } from './survey-options.ts';
 
 /** Above this the rows of the report's tables are left out. */
 const TABLE_WIRES_MAX = 400;
-const PROBE_WIRES_DEFAULT = 16;
 
 export function surveyCircuit(circuit: Circuit, options: SurveyOptions = {}): SurveyReport {
   const { seed = 1, control = freeRunning } = options;
@@ -48,8 +42,14 @@ export function surveyCircuit(circuit: Circuit, options: SurveyOptions = {}): Su
   control.report({ stage: 'following the light cones' });
   const structure = surveyStructure(circuit, contract, notes);
   const influence = surveyInfluence(circuit, options, notes);
-  const causal = influence && causalPart(influence, contract, circuit.wires);
-  const widths = widthRows(circuit, contract, structure, influence);
+  const whole = influence && causalPart(influence, contract, circuit.wires);
+  const windows =
+    whole && whole.plan.width >= structure.plan.width ? null : windowsPart(circuit, options);
+  const causal = whole ?? windows;
+  if (windows) {
+    notes.push(`${windows.plan.method} would leave ${count(windows.plan.width)} for any input`);
+  }
+  const widths = widthRows(circuit, contract, structure, influence, windows);
   addContractNotes(circuit, contract, notes);
   return {
     schema: 'wiregauge/survey@1',
@@ -105,75 +105,12 @@ function surveyStructure(circuit: Circuit, contract: Contract, notes: string[]):
   return { reach, plan, commuted, early };
 }
 
-type InfluencePart = {
-  method: 'dense' | 'probes';
-  kept: Float64Array;
-  measured: Float64Array;
-  keptFloor: number;
-  measuredFloor: number;
-};
-
-function surveyInfluence(
-  circuit: Circuit,
-  options: SurveyOptions,
-  notes: string[],
-): InfluencePart | null {
-  const { seed = 1, control = freeRunning, probeWiresMax = PROBE_WIRES_DEFAULT } = options;
-  const n = circuit.wires;
-  const part = unitaryPart(circuit);
-  if (!part) {
-    notes.push('no influence table: the circuit measures, resets or decides on the way');
-    return null;
-  }
-  if (n <= INFLUENCE_WIRES_MAX) {
-    control.report({ stage: 'measuring influence' });
-    const tables = influenceTables(circuitUnitary(part), n);
-    const keptFloor = influenceFloor(n);
-    return { method: 'dense', ...tables, keptFloor, measuredFloor: Math.sqrt(keptFloor) };
-  }
-  if (n > Math.min(probeWiresMax, PROBE_WIRES_MAX)) {
-    notes.push(
-      `no influence table: a dense one is possible up to ${INFLUENCE_WIRES_MAX} wires, probes up to ${PROBE_WIRES_MAX}`,
-    );
-    return null;
-  }
-  const { kept, measured, probes } = probeTables(part, { seed, control });
-  notes.push(
-    `influence by ${probes} probes: entries are half the largest change seen of the output's state (trace distance); what was not seen is not proved absent`,
-  );
-  return { method: 'probes', kept, measured, keptFloor: PROBE_FLOOR, measuredFloor: PROBE_FLOOR };
-}
-
-/** Row by row: what counts for this output under the contract. */
-function shownTable({ kept, measured }: InfluencePart, contract: Contract): Float64Array {
-  const n = contract.outputs.length;
-  return kept.map((value, at) =>
-    contract.outputs[Math.floor(at / n)] === 'kept' ? value : measured[at]!,
-  );
-}
-
-function causalPart(
-  influence: InfluencePart,
-  contract: Contract,
-  n: number,
-): { relation: Relation; plan: WidthPlan } {
-  const relation = emptyRelation(n, n);
-  for (let output = 0; output < n; output++) {
-    const isKept = contract.outputs[output] === 'kept';
-    const table = isKept ? influence.kept : influence.measured;
-    const floor = isKept ? influence.keptFloor : influence.measuredFloor;
-    for (let input = 0; input < n; input++) {
-      if (table[output * n + input]! > floor) relate(relation, output, input);
-    }
-  }
-  return { relation, plan: planWidth(relation) };
-}
-
 function widthRows(
   circuit: Circuit,
   contract: Contract,
   structure: StructurePart,
   influence: InfluencePart | null,
+  windows: CausalPart | null,
 ): WidthRow[] {
   const n = circuit.wires;
   const out: WidthRow[] = [];
@@ -183,6 +120,10 @@ function widthRows(
     const { width } = planWidth(relationFromTable(kept, n, keptFloor));
     const why = `by influence: no equal circuit has fewer than ${count(width)}, and a chain of blocks has as many`;
     out.push({ contract: 'any/kept', width, how: 'exact', why });
+  } else if (windows && windows.plan.width < byOrder) {
+    const { width, method } = windows.plan;
+    const why = `by ${method}; other circuits may need fewer`;
+    out.push({ contract: 'any/kept', width, how: sure(width), why });
   } else {
     const why = 'by the order of the gates; other circuits may need fewer';
     out.push({ contract: 'any/kept', width: byOrder, how: sure(byOrder), why });

@@ -138,6 +138,33 @@ describe('survey', () => {
     expect(report.causal?.width).toBe(2);
   });
 
+  test('thirty wires with planted words: windows find the openings, said so', () => {
+    const n = 30;
+    const operations: Operation[] = [];
+    for (let k = 0; k + 1 < n; k++) {
+      operations.push(gate('rxx', [k, k + 1], 0.4), gate('ry', [k], 0.3), gate('ry', [k + 1], 0.2));
+      if (k % 7 !== 3) continue;
+      const far = (k + 11) % n;
+      // four of them make a CX from k to far; with the fifth nothing is left
+      for (const pair of [
+        [k, k + 1],
+        [k + 1, far],
+        [k, k + 1],
+        [k + 1, far],
+        [k, far],
+      ]) {
+        operations.push(gate('cx', pair));
+      }
+    }
+    const report = surveyCircuit(of(n, operations));
+    expect(report.structure.width).toBeGreaterThan(3);
+    expect(report.causal?.width).toBe(2);
+    expect(report.causal?.how).toBe('upper');
+    expect(report.openings.length).toBeGreaterThan(10);
+    expect(row(report, 'any/kept')).toMatchObject({ width: 2, how: 'upper' });
+    expect(report.notes.some((note) => note.includes('windows'))).toBe(true);
+  });
+
   test('no wires, one wire', () => {
     expect(surveyCircuit(of(0, [])).widths.length).toBeGreaterThan(0);
     expect(surveyCircuit(of(1, [gate('h', [0])])).structure.width).toBe(1);

@@ -3,7 +3,7 @@
  * would have to wait for each other.
  */
 import { bitsRead, bitWritten, operationWires } from '../circuit/circuit.ts';
-import type { LifeCircuit, LifeNode } from '../survey/lives.ts';
+import type { LifeCircuit, LifeNode } from './lives.ts';
 import { MinimumHeap } from './minimum-heap.ts';
 
 export type Contraction = {

@@ -11,11 +11,11 @@
 import { operationWires } from '../circuit/circuit.ts';
 import { applyGateInto } from '../circuit/unitary.ts';
 import { identity } from '../numeric/complex-matrix.ts';
-import type { AxisFinder } from '../survey/axes.ts';
-import { influenceFloor, influenceTables } from '../survey/influence.ts';
-import type { LifeCircuit, LifeNode } from '../survey/lives.ts';
-import { closureRelation } from '../survey/order.ts';
-import { bitCount, inputsOf, type Relation, relationFromTable } from '../survey/relation.ts';
+import type { AxisFinder } from './axes.ts';
+import { influenceFloor, influenceTables } from './influence.ts';
+import type { LifeCircuit, LifeNode } from './lives.ts';
+import { closureRelation } from './order.ts';
+import { bitCount, inputsOf, type Relation, relationFromTable } from './relation.ts';
 
 export type WindowCandidate = {
   /** Nodes of the circuit, ascending. */
