@@ -139,6 +139,23 @@ describe('Fourier transform, then measurement: Griffiths, Niu, PRL 76, 3228 (199
   });
 });
 
+describe('phase estimation: t bits and one eigenstate wire', () => {
+  // follows from the transform above: one wire for the bits in turn, one for the eigenstate
+  test.each([3, 4])('%i bits narrow to 2 wires with conditions', (t) => {
+    const operations: Operation[] = [gate('h', [t])];
+    for (let k = 0; k < t; k++) operations.push(gate('h', [k]));
+    for (let k = 0; k < t; k++) operations.push(gate('crx', [k, t], 0.7 * 2 ** k));
+    for (let k = t - 1; k >= 0; k--) {
+      for (let j = t - 1; j > k; j--) operations.push(gate('cp', [j, k], -Math.PI / 2 ** (j - k)));
+      operations.push(gate('h', [k]));
+    }
+    for (let k = 0; k < t; k++) operations.push(measure(k));
+    const narrowed = checked(program(t + 1, t, operations));
+    expect(narrowed.circuit.wires).toBe(2);
+    expect(narrowed.circuit.operations.some(({ condition }) => condition)).toBe(true);
+  });
+});
+
 describe('rules at the boundary', () => {
   test('phases before a measurement and gates on dropped wires vanish', () => {
     const operations = [
