@@ -46,6 +46,9 @@ export function planStructure(
   };
   const notes = rulesUsed(structure);
   if (isBetter) notes.push('commutation: some neighbouring gates taken together');
+  if (all.commute && usesCommutation(structure, all)) {
+    notes.push('commutation: gates that commute may come in another order');
+  }
   return {
     original,
     contract,
@@ -54,6 +57,15 @@ export function planStructure(
     width: isBetter ? mergedWidth : width,
     notes,
   };
+}
+
+/** True when the order as written would tie more carriers. */
+function usesCommutation(
+  { circuit, relation, axesOf }: StructureOfLives,
+  rules: StructureRules,
+): boolean {
+  const asWritten = closureRelation(circuit, { ...rules, commute: false }, axesOf);
+  return asWritten.rows.some((row, k) => row.some((word, w) => word !== relation.rows[k]![w]));
 }
 
 /** With gates taken together where the whole commutes with more; the same object when there is nothing to take. */

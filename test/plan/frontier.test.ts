@@ -72,6 +72,10 @@ describe('commuting layers as circuits', () => {
     const circuit = layer(n, edges, 3);
     const narrowed = narrowByStructure(circuit, contractOf(circuit));
     expect(narrowed.circuit.wires).toBe(width);
+    expect(narrowed.rules.some((rule) => rule.startsWith('commutation'))).toBe(true);
+    const strict = narrowByStructure(circuit, contractOf(circuit), { rules: { commute: false } });
+    expect(strict.circuit.wires).toBeGreaterThan(width);
+    expect(strict.rules.some((rule) => rule.startsWith('commutation'))).toBe(false);
   });
   test('a cubic graph of 80 vertices on 16 wires or fewer, every gate still there', () => {
     const circuit = layer(80, cubic(80, 4), 4);
