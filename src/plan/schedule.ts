@@ -16,13 +16,13 @@ import {
   operationWires,
 } from '../circuit/circuit.ts';
 import type { AxisFinder } from '../survey/axes.ts';
+import { unmerged } from '../survey/blocks.ts';
 import type { LifeCircuit } from '../survey/lives.ts';
 import { MinimumHeap } from '../survey/minimum-heap.ts';
 import { type OrderGraph, orderGraph } from '../survey/order.ts';
 import { inputsOf, type Relation } from '../survey/relation.ts';
 import { restrictGate } from '../survey/restrict.ts';
 import type { WireEvent } from './assemble.ts';
-import { unmerged } from './blocks.ts';
 
 export type SchedulePlan = {
   circuit: LifeCircuit;

@@ -4,17 +4,11 @@
  */
 import type { AssignOperation, Circuit } from '../circuit/circuit.ts';
 import type { Contract } from '../contract.ts';
-import { simplifyBoundary } from '../survey/boundary.ts';
-import {
-  ALL_RULES,
-  type StructureOfLives,
-  type StructureRules,
-  structureOf,
-} from '../survey/early.ts';
+import { bestStructure } from '../survey/best-structure.ts';
+import { ALL_RULES, type StructureOfLives, type StructureRules } from '../survey/early.ts';
 import { closureRelation, orderGraph } from '../survey/order.ts';
-import { planWidth, type WidthPlan } from '../survey/width.ts';
+import type { WidthPlan } from '../survey/width.ts';
 import { assembleWires, type NarrowedCircuit } from './assemble.ts';
-import { mergeBlocks } from './blocks.ts';
 import { type Schedule, type SchedulePlan, schedule } from './schedule.ts';
 
 export type StructurePlan = {
@@ -33,19 +27,14 @@ export function planStructure(
   rules: Partial<StructureRules> = {},
 ): StructurePlan {
   const all = { ...ALL_RULES, ...rules };
-  const plain = structureOf(original, contract, all);
-  const width = planWidth(plain.relation);
-  const merged = all.commute ? withBlocks(plain, all) : plain;
-  const mergedWidth = merged === plain ? width : planWidth(merged.relation);
-  const isBetter = mergedWidth.width < width.width;
-  const structure = isBetter ? merged : plain;
+  const { structure, width, isMerged } = bestStructure(original, contract, all);
   const { circuit, relation, axesOf } = structure;
   const bitOf = (carrier: number): number => {
     const { bit, output } = circuit.lives[carrier]!;
     return bit >= 0 ? bit : original.bits + output;
   };
   const notes = rulesUsed(structure);
-  if (isBetter) notes.push('commutation: some neighbouring gates taken together');
+  if (isMerged) notes.push('commutation: some neighbouring gates taken together');
   if (all.commute && usesCommutation(structure, all)) {
     notes.push('commutation: gates that commute may come in another order');
   }
@@ -54,7 +43,7 @@ export function planStructure(
     contract,
     structure,
     scheduling: { circuit, relation, graph: orderGraph(circuit, all, axesOf), bitOf },
-    width: isBetter ? mergedWidth : width,
+    width,
     notes,
   };
 }
@@ -66,21 +55,6 @@ function usesCommutation(
 ): boolean {
   const asWritten = closureRelation(circuit, { ...rules, commute: false }, axesOf);
   return asWritten.rows.some((row, k) => row.some((word, w) => word !== relation.rows[k]![w]));
-}
-
-/** With gates taken together where the whole commutes with more; the same object when there is nothing to take. */
-function withBlocks(plain: StructureOfLives, rules: StructureRules): StructureOfLives {
-  const { axesOf } = plain;
-  const merged = mergeBlocks(plain.circuit, axesOf);
-  if (merged === plain.circuit) return plain;
-  const ends = { zero: false, dead: rules.dead, xor: false };
-  const { circuit, used } = simplifyBoundary(merged, ends, axesOf);
-  return {
-    ...plain,
-    circuit,
-    used: { ...plain.used, dead: plain.used.dead + used.dead },
-    relation: closureRelation(circuit, rules, axesOf),
-  };
 }
 
 /** The circuit in which outputs leave in the given order, on at most `wires` wires (as many as the order needs). */

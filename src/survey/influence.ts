@@ -12,9 +12,10 @@
  * Method: split the rows of u by the output's bit into A (0) and B (1). Then X', Y' are made of K = A^dag B and
  * Z' = 1 - 2 B^dag B, and sum_P s_P^2 = 4 (N(K) + N(B^dag B)) / d, N(M) = the squared norm of the part of M that
  * acts on wire j = ||M01||^2 + ||M10||^2 + ||M00 - M11||^2 / 2 in blocks of that wire: no cancellation.
- * Cost: one and a half (2^n x 2^(n-1) x 2^n) complex products per output, 6 n 8^n flops in all.
+ * Cost: one and a half (2^n x 2^(n-1) x 2^n) complex products per output, 6 n 8^n flops in all; 4^(n-m) times less for an output that only m inputs reach.
  * Limits: `INFLUENCE_WIRES_MAX` wires.
  */
+import { inputsOf, type Relation } from './relation.ts';
 
 /** 10 wires: about 65 Gflop and 70 MB. */
 export const INFLUENCE_WIRES_MAX = 10;
@@ -29,62 +30,78 @@ export function influenceFloor(n: number): number {
   return 2 ** n * 1e-23;
 }
 
-export function influenceTables(u: Float64Array, n: number): InfluenceTables {
+/**
+ * `reach`: inputs that can influence each output at all (light cones). The others are left out of the products: what
+ * is pulled back is trivial there, so the columns with these inputs at 0 tell everything.
+ */
+export function influenceTables(u: Float64Array, n: number, reach?: Relation): InfluenceTables {
   const kept = new Float64Array(n * n);
   const measured = new Float64Array(n * n);
-  const d = 2 ** n;
-  const k = new Float64Array(2 * d * d);
-  const a = new Float64Array(d * d);
-  const b = new Float64Array(d * d);
   for (let output = 0; output < n; output++) {
-    columnsWhere(a, u, n, output, 0);
-    columnsWhere(b, u, n, output, 1);
-    dotsInto(k, a, b, d, d / 2, false);
-    const flips = Float64Array.from({ length: n }, (_, j) => partOn(k, n, j));
-    dotsInto(k, b, b, d, d / 2, true);
-    for (let j = 0; j < n; j++) {
-      const signs = partOn(k, n, j);
-      kept[output * n + j] = (flips[j]! + signs) / (2 * d);
-      measured[output * n + j] = Math.sqrt(signs / d);
-    }
+    const inputs = reach ? inputsOf(reach, output) : Array.from({ length: n }, (_, k) => k);
+    const m = inputs.length;
+    const d = 2 ** m;
+    const half = 2 ** (n - 1);
+    const a = columnsWhere(u, n, output, 0, inputs);
+    const b = columnsWhere(u, n, output, 1, inputs);
+    const k = dots(a, b, d, half, false);
+    const flips = inputs.map((_, place) => partOn(k, m, place));
+    const z = dots(b, b, d, half, true);
+    inputs.forEach((input, place) => {
+      const signs = partOn(z, m, place);
+      kept[output * n + input] = (flips[place]! + signs) / (2 * d);
+      measured[output * n + input] = Math.sqrt(signs / d);
+    });
   }
   return { kept, measured };
 }
 
-/** out[column] = that column of u, only the rows in which the output's bit has the given value: d x d/2, planar. */
+/**
+ * out[c] = the c-th column of u among those with all inputs but the given ones at 0, only the rows in which the output's bit
+ * has the given value: 2^m x 2^(n-1), planar.
+ */
 function columnsWhere(
-  out: Float64Array,
   u: Float64Array,
   n: number,
   output: number,
   value: 0 | 1,
-): void {
+  inputs: readonly number[],
+): Float64Array {
   const d = 2 ** n;
   const half = d / 2;
+  const columns = new Int32Array(2 ** inputs.length);
+  inputs.forEach((input, place) => {
+    const bit = 2 ** (inputs.length - 1 - place);
+    for (let c = 0; c < columns.length; c++) if (c & bit) columns[c]! += 2 ** (n - 1 - input);
+  });
   const stride = 2 ** (n - 1 - output);
+  const im = columns.length * half;
+  const out = new Float64Array(2 * im);
   let to = 0;
   for (let row = 0; row < d; row++) {
     if ((row & stride ? 1 : 0) !== value) continue;
-    for (let column = 0; column < d; column++) {
-      out[column * half + to] = u[row * d + column]!;
-      out[d * half + column * half + to] = u[d * d + row * d + column]!;
+    for (let c = 0; c < columns.length; c++) {
+      const from = row * d + columns[c]!;
+      out[c * half + to] = u[from]!;
+      out[im + c * half + to] = u[d * d + from]!;
     }
     to++;
   }
+  return out;
 }
 
 /**
  * out[i d + j] = sum_r conj(a[i, r]) b[j, r] for planar a, b of d x m, two rows of each at a time (in registers);
  * `hermitian`: a = b, and half of it is copied. d is even.
  */
-function dotsInto(
-  out: Float64Array,
+function dots(
   a: Float64Array,
   b: Float64Array,
   d: number,
   m: number,
   hermitian: boolean,
-): void {
+): Float64Array {
+  const out = new Float64Array(2 * d * d);
   const im = d * m;
   const io = d * d;
   for (let i = 0; i < d; i += 2) {
@@ -121,13 +138,14 @@ function dotsInto(
       out[io + at + d + 1] = s3;
     }
   }
-  if (!hermitian) return;
+  if (!hermitian) return out;
   for (let i = 0; i < d; i++) {
     for (let j = 0; j < i; j++) {
       out[i * d + j] = out[j * d + i]!;
       out[io + i * d + j] = -out[io + j * d + i]!;
     }
   }
+  return out;
 }
 
 /** Squared norm of the part of a 2^n x 2^n matrix that is not trivial on wire j. */

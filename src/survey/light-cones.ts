@@ -14,17 +14,9 @@ import { emptyRelation, type Relation, relate, relates } from './relation.ts';
 
 /** Which inputs each output needs when gates keep their order: wires x wires. */
 export function structuralRelation(circuit: Circuit): Relation {
-  return ofWires(circuit, { commute: false, early: false });
-}
-
-/** The same when gates that commute have no order. */
-export function commutedRelation(circuit: Circuit): Relation {
-  return ofWires(circuit, { commute: true, early: false });
-}
-
-function ofWires(circuit: Circuit, rules: { commute: boolean; early: boolean }): Relation {
   const lives = livesOf(circuit, keptContract(circuit.wires));
-  return wireRelation(lives, closureRelation(lives, rules, axisFinder()), circuit.wires);
+  const asWritten = { commute: false, early: false };
+  return wireRelation(lives, closureRelation(lives, asWritten, axisFinder()), circuit.wires);
 }
 
 /** The rows and columns of a relation between lives that are outputs and inputs of the original. */

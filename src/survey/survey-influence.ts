@@ -8,7 +8,7 @@ import type { Contract } from '../contract.ts';
 import { freeRunning } from '../control.ts';
 import { ALL_RULES, structureOf } from './early.ts';
 import { INFLUENCE_WIRES_MAX, influenceFloor, influenceTables } from './influence.ts';
-import { wireRelation } from './light-cones.ts';
+import { structuralRelation, wireRelation } from './light-cones.ts';
 import { PROBE_FLOOR, PROBE_WIRES_MAX, probeTables } from './probes.ts';
 import { emptyRelation, type Relation, relate } from './relation.ts';
 import type { SurveyOptions } from './survey-options.ts';
@@ -44,7 +44,7 @@ export function surveyInfluence(
   }
   if (n <= INFLUENCE_WIRES_MAX) {
     control.report({ stage: 'measuring influence' });
-    const tables = influenceTables(circuitUnitary(part), n);
+    const tables = influenceTables(circuitUnitary(part), n, structuralRelation(part));
     const keptFloor = influenceFloor(n);
     return { method: 'dense', ...tables, keptFloor, measuredFloor: Math.sqrt(keptFloor) };
   }

@@ -12,8 +12,8 @@ import { applyGateInto } from '../circuit/unitary.ts';
 import { type Contract, contractName } from '../contract.ts';
 import { freeRunning } from '../control.ts';
 import type { HowSure, Pair, SurveyReport, WidthRow } from '../reports.ts';
-import { structureOf } from './early.ts';
-import { commutedRelation, structuralRelation } from './light-cones.ts';
+import { bestStructure } from './best-structure.ts';
+import { structuralRelation } from './light-cones.ts';
 import { livesOf } from './lives.ts';
 import { closureRelation } from './order.ts';
 import { type Relation, relates, relationFromTable, relationMatrix } from './relation.ts';
@@ -93,15 +93,15 @@ function surveyStructure(circuit: Circuit, contract: Contract, notes: string[]):
   const isPlain = lives.lives.length === circuit.wires;
   const asWritten = { commute: false, early: false };
   const plan = planWidth(isPlain ? reach : closureRelation(lives, asWritten));
-  const freely = { commute: true, early: false };
-  const commuted = planWidth(isPlain ? commutedRelation(circuit) : closureRelation(lives, freely));
+  const anyKept: Contract = { ...kept, inputs: kept.inputs.map(() => 'any') };
+  const commuted = bestStructure(circuit, anyKept).width;
   if (commuted.width < plan.width) {
     notes.push(`gates that commute, put in another order, need ${count(commuted.width)}`);
   }
   if (lives.barriers > 0) notes.push('barriers are not counted as order between gates');
   const isLoose =
     contract.outputs.some((rule) => rule !== 'kept') || contract.inputs.includes('zero');
-  const early = isLoose ? planWidth(structureOf(circuit, contract).relation) : null;
+  const early = isLoose ? bestStructure(circuit, contract).width : null;
   return { reach, plan, commuted, early };
 }
 
@@ -147,7 +147,7 @@ function sure(width: number): HowSure {
 function measuredRow(circuit: Circuit, byOrder: number, influence: InfluencePart | null): WidthRow {
   const n = circuit.wires;
   const contract = contractOf(circuit, { inputs: 'any', outputs: 'measured' });
-  const early = Math.min(byOrder, planWidth(structureOf(circuit, contract).relation).width);
+  const early = Math.min(byOrder, bestStructure(circuit, contract).width.width);
   const causal =
     influence?.method === 'dense'
       ? planWidth(relationFromTable(influence.measured, n, influence.measuredFloor)).width

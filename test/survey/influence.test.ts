@@ -6,6 +6,7 @@ import { adjoint, identity, kron, mul, normSquared } from '../../src/numeric/com
 import { random } from '../../src/numeric/random.ts';
 import { haarUnitary } from '../../src/numeric/svd.ts';
 import { influenceFloor, influenceTables } from '../../src/survey/influence.ts';
+import { structuralRelation } from '../../src/survey/light-cones.ts';
 import { probeTables } from '../../src/survey/probes.ts';
 import { relates, relationFromTable } from '../../src/survey/relation.ts';
 
@@ -41,6 +42,25 @@ describe('influence tables', () => {
         expect(kept[i * n + j]).toBeCloseTo((parts[0]! + parts[1]! + parts[2]!) / 8, 12);
         expect(measured[i * n + j]).toBeCloseTo(Math.sqrt(parts[2]!) / 2, 12);
       }
+    }
+  });
+
+  test('light cones leave nothing out', () => {
+    const n = 5;
+    const pairs = [
+      [0, 1],
+      [3, 4],
+      [1, 2],
+    ];
+    const draw = random('cones');
+    const operations = pairs.map((wires) => unitaryGate(haarUnitary(4, draw), wires));
+    const circuit = { ...emptyCircuit(n), operations };
+    const u = circuitUnitary(circuit);
+    const whole = influenceTables(u, n);
+    const short = influenceTables(u, n, structuralRelation(circuit));
+    for (let k = 0; k < n * n; k++) {
+      expect(short.kept[k]).toBeCloseTo(whole.kept[k]!, 13);
+      expect(short.measured[k]).toBeCloseTo(whole.measured[k]!, 13);
     }
   });
 

@@ -13,10 +13,10 @@
 import { type GateOperation, operationWires, unitaryGate } from '../circuit/circuit.ts';
 import { applyGateInto } from '../circuit/unitary.ts';
 import { identity } from '../numeric/complex-matrix.ts';
-import { type Axis, type AxisFinder, axisOn, sameAxis } from '../survey/axes.ts';
-import { contracted } from '../survey/contracted.ts';
-import type { LifeCircuit, LifeNode } from '../survey/lives.ts';
-import { carrierSets, growForward, isGate, linesOf } from '../survey/window-search.ts';
+import { type Axis, type AxisFinder, axisOn, sameAxis } from './axes.ts';
+import { contracted } from './contracted.ts';
+import type { LifeCircuit, LifeNode } from './lives.ts';
+import { carrierSets, growForward, isGate, linesOf } from './window-search.ts';
 
 /** Larger circuits are planned gate by gate. */
 export const BLOCK_NODES_MAX = 20000;
