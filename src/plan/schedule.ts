@@ -130,8 +130,14 @@ class Scheduling {
     const { input } = this.plan.circuit.lives[carrier]!;
     this.entered[carrier] = 1;
     this.held++;
-    this.events.push({ kind: 'enter', input, carrier });
+    if (!this.isIdle(carrier)) this.events.push({ kind: 'enter', input, carrier });
     this.openNext(carrier);
+  }
+
+  /** Nothing happens on it and nobody looks at it: it needs no wire. */
+  private isIdle(carrier: number): boolean {
+    const { groups } = this.plan.graph;
+    return groups[carrier]!.length === 0 && this.plan.circuit.lives[carrier]!.rule === 'dropped';
   }
 
   /** Opens the next group of a carrier that is there. */
@@ -199,7 +205,7 @@ class Scheduling {
       const operation: Operation = { kind: 'measure', wire: carrier, bit };
       this.events.push({ kind: 'operation', operation });
     }
-    this.events.push({ kind: 'leave', output, carrier });
+    if (!this.isIdle(carrier)) this.events.push({ kind: 'leave', output, carrier });
     this.settle(node);
   }
 

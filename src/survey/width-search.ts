@@ -75,7 +75,7 @@ export function searchOrder(
   }
   const exact = bound >= width;
   const method = exact
-    ? 'exact: beam search that meets a lower bound'
+    ? 'exact: search that meets its lower bound'
     : `beam search in both directions; lower bound ${bound}`;
   return { order: best, width, lowerBound: Math.min(bound, width), exact, method };
 }

@@ -5,7 +5,7 @@
  * |N(o1) u ... u N(o_k)| - (k - 1) wires; the width is the smallest maximum over all orders, at least 1. (For one
  * layer of commuting two-wire gates this is the pathwidth of the interaction graph plus one.)
  * Method: up to `EXACT_OUTPUTS_MAX` outputs, dynamic programming over sets of outputs (the union of a set is that of
- * the set less its lowest bit). Beyond, beam search in both directions of time (a circuit and its reverse have
+ * the set less its lowest bit), unless a short search proves its answer. Beyond, beam search in both directions of time (a circuit and its reverse have
  * equal widths; arXiv:2210.08039), a lower bound, and branch and bound between the two (`width-search.ts`).
  * Ties: when exact, high outputs leave late; beyond, fixed by the search: the same relation gives the same order.
  * Cost: 2^n n steps and 6 x 2^n bytes when exact.
@@ -18,15 +18,20 @@ import { searchOrder } from './width-search.ts';
 export type { WidthOptions, WidthPlan } from './width-plan.ts';
 
 export const EXACT_OUTPUTS_MAX = 22;
+/** Up to this many outputs dynamic programming takes no time to speak of. */
+const PLAIN_OUTPUTS_MAX = 14;
 
 export function planWidth(relation: Relation, options: WidthOptions = {}): WidthPlan {
   const { outputs, inputs } = relation;
   if (outputs === 0) {
     return { order: [], width: Math.max(1, inputs), lowerBound: 1, exact: true, method: 'trivial' };
   }
-  if (outputs <= EXACT_OUTPUTS_MAX) return exactPlan(relation);
+  if (outputs <= PLAIN_OUTPUTS_MAX) return exactPlan(relation);
   const lowerBound = lowerBoundOf(relation);
-  return searchOrder(relation, lowerBound, options);
+  if (outputs > EXACT_OUTPUTS_MAX) return searchOrder(relation, lowerBound, options);
+  // a short search often proves its answer, in less time than all sets of outputs take
+  const found = searchOrder(relation, lowerBound, { ...options, effort: 1 });
+  return found.exact ? found : exactPlan(relation);
 }
 
 function exactPlan(relation: Relation): WidthPlan {

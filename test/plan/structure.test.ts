@@ -228,6 +228,12 @@ describe('rules at the boundary', () => {
 });
 
 describe('programs that measure, reset and decide on the way', () => {
+  test('wires on which nothing happens and at which nobody looks are left out', () => {
+    const narrowed = checked(
+      program(5, 1, [gate('h', [3]), gate('crx', [3, 1], 0.4), measure(1, 0)]),
+    );
+    expect(narrowed.circuit.operations.filter(({ kind }) => kind === 'reset').length).toBe(2);
+  });
   test('a flip under a condition leaves the value unknown', () => {
     const operations: Operation[] = [
       gate('h', [0]),
