@@ -4,10 +4,12 @@
  *
  * Result: for each value of the observed bits, the (unnormalised) density matrix of the kept outputs.
  */
-import { type BitExpression, type Circuit, evaluateBits } from '../../src/circuit/circuit.ts';
+import { type BitExpression, type Circuit, evaluateBits, gate } from '../../src/circuit/circuit.ts';
 import { gateMatrix } from '../../src/circuit/unitary.ts';
 import type { Contract } from '../../src/contract.ts';
 import { normal, random } from '../../src/numeric/random.ts';
+
+const SWAP = gateMatrix(gate('swap', [0, 1]));
 
 type Qubit = readonly [number, number, number, number]; // re0, im0, re1, im1
 type Branch = { re: Float64Array; im: Float64Array; axes: number; bits: boolean[] };
@@ -60,7 +62,14 @@ export function simulate(
     const holds = (b: Branch, e: BitExpression | undefined): boolean =>
       e === undefined || evaluateBits(e, (bit) => b.bits[bit]!);
     if (operation.kind === 'reset') {
-      if (condition) throw new Error('a conditional reset is not simulated here: none expected');
+      if (condition) {
+        // every branch gets a fresh axis; where the condition holds it is exchanged with the wire's
+        const [axis, fresh] = [axisOf.get(operation.wire)!, branches[0]!.axes];
+        branches = branches
+          .map((b) => withQubit(b, [1, 0, 0, 0]))
+          .map((b) => (holds(b, condition) ? applied(b, SWAP, [axis, fresh]) : b));
+        continue;
+      }
       const input = note(operation.annotations, 'enters');
       start(operation.wire, input >= 0 ? inputs[input]! : [1, 0, 0, 0]);
     } else if (operation.kind === 'gate') {

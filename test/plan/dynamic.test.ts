@@ -31,7 +31,7 @@ function randomProgram(n: number, length: number, seed: number): Circuit {
     else if (kind < 0.98)
       next = { kind: 'assign', bit: pick(bits), value: { kind: 'bit', bit: pick(bits) } };
     else next = { kind: 'barrier', wires: [a, b] };
-    const mayDepend = next.kind === 'gate' || next.kind === 'assign';
+    const mayDepend = next.kind !== 'barrier';
     if (mayDepend && written.size > 0 && draw() < 0.3) {
       const list = [...written];
       const bit = { kind: 'bit' as const, bit: list[pick(list.length)]! };
