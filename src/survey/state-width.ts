@@ -5,6 +5,8 @@
  * rest: width = 1 + max_k ceil(log2 rank_k), the least over all orders by dynamic programming over sets.
  * Source: sequential generation, Schoen, Solano, Verstraete, Cirac, Wolf, PRL 95, 110503 (2005).
  * Shape: state has 2^n amplitudes, planar.
+ * Fewer wires: a state of rank at most 2^(wires - 1) across a cut overlaps with this one by at most the sum of so many
+ * largest squared coefficients (Eckart, Young, Psychometrika 1, 211 (1936)); the least worst cut over all orders.
  * Cost: 2^(n-1) singular value decompositions. Limit: `STATE_WIDTH_WIRES_MAX` wires.
  */
 import { svd } from '../numeric/svd.ts';
@@ -13,20 +15,52 @@ export const STATE_WIDTH_WIRES_MAX = 10;
 /** Schmidt coefficients below this are rounding. */
 const COEFFICIENT_MIN = 1e-10;
 
-export type StateWidth = { width: number; order: number[]; ranks: number[] };
+export type StateWidth = {
+  width: number;
+  order: number[];
+  /** Schmidt rank after each output of the order has left. */
+  ranks: number[];
+  /** For each smaller number of wires, how far any state made on so few must be from this one. */
+  prices: { wires: number; infidelityAtLeast: number }[];
+};
 
 export function stateWidth(state: Float64Array, n: number): StateWidth {
-  const size = 2 ** n;
-  const full = size - 1;
-  const rank = new Int32Array(size).fill(1);
+  const full = 2 ** n - 1;
+  // per set of outputs: squared Schmidt coefficients against the rest, descending
+  const weights: Float64Array[] = [Float64Array.of(1)];
   for (let set = 1; set < full; set++) {
     const rest = full ^ set;
-    rank[set] = set > rest ? rank[rest]! : schmidtRank(state, n, set);
+    weights[set] = set > rest ? weights[rest]! : schmidtWeights(state, n, set);
   }
-  const best = new Int32Array(size).fill(1);
+  weights[full] = Float64Array.of(1);
+  const rank = weights.map(
+    (list) => list.filter((weight) => weight > COEFFICIENT_MIN * COEFFICIENT_MIN).length,
+  );
+  const { value: width, order } = bestOrder(
+    n,
+    rank.map((r) => 1 + Math.ceil(Math.log2(Math.max(1, r)))),
+  );
+  let set = 0;
+  const ranks = order.map((output) => {
+    set |= 1 << output;
+    return rank[set]!;
+  });
+  const prices: StateWidth['prices'] = [];
+  for (let wires = width - 1; wires >= 1; wires--) {
+    // Eckart-Young: rank 2^(wires - 1) keeps at most the largest weights
+    const lost = weights.map((list) => list.slice(2 ** (wires - 1)).reduce((x, y) => x + y, 0));
+    prices.push({ wires, infidelityAtLeast: bestOrder(n, lost).value });
+  }
+  return { width, order, ranks, prices };
+}
+
+/** The order of outputs whose worst prefix costs least, by dynamic programming over sets. */
+function bestOrder(n: number, costs: readonly number[]): { value: number; order: number[] } {
+  const size = 2 ** n;
+  const best = new Float64Array(size);
   const last = new Int32Array(size).fill(-1);
   for (let set = 1; set < size; set++) {
-    let least = Number.MAX_SAFE_INTEGER;
+    let least = Number.POSITIVE_INFINITY;
     for (let k = 0; k < n; k++) {
       if (!(set & (1 << k))) continue;
       // <= : the highest output leaves last among equals
@@ -35,21 +69,15 @@ export function stateWidth(state: Float64Array, n: number): StateWidth {
         last[set] = k;
       }
     }
-    best[set] = Math.max(least, 1 + Math.ceil(Math.log2(rank[set]!)));
+    best[set] = Math.max(least, costs[set]!);
   }
   const order: number[] = [];
-  for (let set = full; set > 0; set ^= 1 << last[set]!) order.push(last[set]!);
-  order.reverse();
-  let set = 0;
-  const ranks = order.map((output) => {
-    set |= 1 << output;
-    return rank[set]!;
-  });
-  return { width: n === 0 ? 0 : best[full]!, order, ranks };
+  for (let set = size - 1; set > 0; set ^= 1 << last[set]!) order.push(last[set]!);
+  return { value: best[size - 1]!, order: order.reverse() };
 }
 
-/** Rank between the outputs in the set (bit k = output k) and the others. */
-function schmidtRank(state: Float64Array, n: number, set: number): number {
+/** Squared Schmidt coefficients between the outputs in the set (bit k = output k) and the others. */
+function schmidtWeights(state: Float64Array, n: number, set: number): Float64Array {
   const inside: number[] = [];
   const outside: number[] = [];
   for (let k = 0; k < n; k++) (set & (1 << k) ? inside : outside).push(2 ** (n - 1 - k));
@@ -71,5 +99,5 @@ function schmidtRank(state: Float64Array, n: number, set: number): number {
     });
   });
   const { s } = svd(matrix, rows.length, columns.length);
-  return Math.max(1, s.filter((value) => value > COEFFICIENT_MIN).length);
+  return s.map((coefficient) => coefficient * coefficient);
 }

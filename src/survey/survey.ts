@@ -177,8 +177,13 @@ function zeroRow(circuit: Circuit, byOrder: number): WidthRow | null {
   for (const operation of part.operations) {
     if (operation.kind === 'gate') applyGateInto(state, operation, n, 1);
   }
-  const { width } = stateWidth(state, n);
-  const why = 'by the Schmidt ranks of the state, which rest on a classical simulation';
+  const { width, prices: fewer } = stateWidth(state, n);
+  const cost = fewer.map(
+    ({ wires, infidelityAtLeast }) =>
+      `; ${count(wires)}: infidelity at least ${infidelityAtLeast.toPrecision(3)}`,
+  );
+  const ground = 'by the Schmidt ranks of the state, which rest on a classical simulation';
+  const why = ground + cost.join('');
   return { contract: 'zero/kept', width, how: 'exact', why };
 }
 

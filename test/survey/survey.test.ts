@@ -95,6 +95,15 @@ describe('survey', () => {
     expect(row(surveyCircuit(of(n, cluster)), 'zero/kept')).toMatchObject({ width: 2 });
   });
 
+  test('fewer wires for a state have their price: Eckart, Young', () => {
+    // cos |00> + sin |11> on one wire is a product state: infidelity sin^2 at best
+    const t = 0.3;
+    const report = surveyCircuit(of(2, [gate('ry', [0], 2 * t), gate('cx', [0, 1])]));
+    const why = row(report, 'zero/kept')!.why;
+    expect(row(report, 'zero/kept')!.width).toBe(2);
+    expect(why).toContain(`one wire: infidelity at least ${(Math.sin(t) ** 2).toPrecision(3)}`);
+  });
+
   test('a W state from |0...0>: two wires', () => {
     const n = 5;
     const operations: Operation[] = [gate('x', [0])];
