@@ -1,11 +1,12 @@
 /**
  * Puts carriers on physical wires: who enters where, who leaves when, and which wire is used again.
  *
- * Events come in one order; each carrier enters once and leaves once. A carrier takes a wire just before its first
- * operation: a wire not used yet while there are any within the limit, else the free wire that is free earliest.
+ * Events come in one order; each carrier enters once and leaves once. A carrier takes a wire just before its
+ * first operation: a wire not used yet while there are any within the limit, else the free wire that is free
+ * earliest.
  * Written: a reset under `wiregauge.enters k` where input k starts (the first ones too), a measurement under
- * `wiregauge.leaves i` where output i ends: into its own bit where the original measures it, into `out[i]` where it
- * is kept or measured without a bit. A dropped output is named at the next reset of its wire.
+ * `wiregauge.leaves i` where output i ends: into its own bit where the original measures it, into `out[i]`
+ * where it is kept or measured without a bit. A dropped output is named at the next reset of its wire.
  */
 import { assert } from '../assert.ts';
 import {
@@ -19,8 +20,8 @@ import {
 import type { Contract } from '../contract.ts';
 
 /**
- * `input` -1 is a fresh |0> that is no input of the original, `output` -1 ends without a trace. Operations act on
- * carrier numbers.
+ * `input` -1 is a fresh |0> that is no input of the original, `output` -1 ends without a trace. Operations act
+ * on carrier numbers.
  */
 export type WireEvent =
   | { kind: 'enter'; input: number; carrier: number }

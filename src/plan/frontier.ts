@@ -1,10 +1,10 @@
 /**
  * The trade between wires and depth: for each number of wires the least deep plan that was found.
  *
- * Method: for every number of wires a few orders of outputs are tried: the plan with the fewest wires, and greedy
- * orders that let first leave what is finished first when wires are no concern, with more or less weight on how many
- * inputs a choice makes enter. Each is scheduled, put on wires and measured. A plan for fewer wires is one for more
- * wires as well, so depth never rises with wires.
+ * Method: for every number of wires a few orders of outputs are tried: the plan with the fewest wires, and
+ * greedy orders that let first leave what is finished first when wires are no concern, with more or less
+ * weight on how many inputs a choice makes enter. Each is scheduled, put on wires and measured. A plan for
+ * fewer wires is one for more wires as well, so depth never rises with wires.
  * Cost: `ORDERS` schedules for each number of wires.
  */
 import type { Circuit } from '../circuit/circuit.ts';

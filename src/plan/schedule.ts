@@ -1,11 +1,12 @@
 /**
  * Makes one order of events from a plan: which carrier enters, which operation happens, which carrier leaves.
  *
- * Given the order in which carriers are to end and a number of wires, carriers enter in the order in which the plan
- * needs them, as soon as there is room; every operation happens as soon as it can; a carrier ends when nothing is
- * left to do on it. Only when no more can happen does a measured carrier end early, and what is left on it becomes
- * conditions on its bit. So with room enough no condition appears, and with the plan's own width it never gets stuck: when
- * the first m carriers of the plan are there, everything that the ended ones need has happened.
+ * Given the order in which carriers are to end and a number of wires, carriers enter in the order in which the
+ * plan needs them, as soon as there is room; every operation happens as soon as it can; a carrier ends when
+ * nothing is left to do on it. Only when no more can happen does a measured carrier end early, and what is
+ * left on it becomes conditions on its bit. So with room enough no condition appears, and with the plan's own
+ * width it never gets stuck: when the first m carriers of the plan are there, everything that the ended ones
+ * need has happened.
  * Cost: (operations + carriers^2 / 32) steps.
  */
 import { assert } from '../assert.ts';

@@ -1,6 +1,6 @@
 /**
- * Plans a circuit by structure: carriers, their order, and the order of outputs with the fewest wires; and makes the
- * circuit of any order of outputs.
+ * Plans a circuit by structure: carriers, their order, and the order of outputs with the fewest wires; and
+ * makes the circuit of any order of outputs.
  */
 import type { AssignOperation, Circuit } from '../circuit/circuit.ts';
 import type { Contract } from '../contract.ts';
@@ -57,7 +57,9 @@ function usesCommutation(
   return asWritten.rows.some((row, k) => row.some((word, w) => word !== relation.rows[k]![w]));
 }
 
-/** The circuit in which outputs leave in the given order, on at most `wires` wires (as many as the order needs). */
+/**
+ * The circuit in which outputs leave in the given order, on at most `wires` wires (as many as the order needs).
+ */
 export function narrowAlong(
   plan: StructurePlan,
   order: readonly number[],

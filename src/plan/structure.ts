@@ -1,9 +1,10 @@
 /**
  * Narrows a circuit by structure alone: no gate is made anew, they are only put in another order.
  *
- * Used, each can be switched off: commutation, early measurement, and the rules at the boundary (`survey/boundary.ts`).
- * The order in which outputs leave is planned for the fewest wires; with `wires` above that number, fewer wires are
- * used again and the circuit is less deep. Among the schedules tried the least deep is taken.
+ * Used, each can be switched off: commutation, early measurement, and the rules at the boundary
+ * (`survey/boundary.ts`).
+ * The order in which outputs leave is planned for the fewest wires; with `wires` above that number, fewer
+ * wires are used again and the circuit is less deep. Among the schedules tried the least deep is taken.
  */
 import type { Circuit } from '../circuit/circuit.ts';
 import type { Contract } from '../contract.ts';

@@ -1,10 +1,11 @@
 /**
  * Plans a circuit with windows to be reshaped, and takes in what the windows have become.
  *
- * A plan of the whole is a nested order, so it induces one on each window: its outputs in the order in which they are
- * first needed. Each window can be factored along that order (`order`, `needs` are a plan for the chain
- * factorisation), and the whole then has the width told here.
- * To use it: `planStructure`, `planWindows`, make gates of each window, `withWindows`, and go on as with any plan.
+ * A plan of the whole is a nested order, so it induces one on each window: its outputs in the order in which
+ * they are first needed. Each window can be factored along that order (`order`, `needs` are a plan for the
+ * chain factorisation), and the whole then has the width told here.
+ * To use it: `planStructure`, `planWindows`, make gates of each window, `withWindows`, and go on as with any
+ * plan.
  */
 import { type GateOperation, operationWires } from '../circuit/circuit.ts';
 import { contracted } from '../survey/contracted.ts';
@@ -76,7 +77,8 @@ function firstWanted(
     position[end] = at;
   });
   const never = Number.POSITIVE_INFINITY;
-  // on each carrier: wanted by what comes after the open group; within it; and by an end that may come before it
+  // on each carrier: wanted by what comes after the open group; within it; and by an end that may come before
+  // it
   const after = Float64Array.from(lives, (_, c) => (graph.ends[c]!.isEarly ? never : position[c]!));
   const within = new Float64Array(lives.length).fill(never);
   const firstOfGroup = new Set<string>();

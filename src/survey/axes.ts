@@ -1,11 +1,11 @@
 /**
  * Finds along which axis a gate acts on each of its wires, which decides what it commutes with.
  *
- * A gate has axis n on a wire when it commutes with n . sigma there (n = z for a control or a phase, x for the target
- * of a CX). Two gates that have the same axis on every wire they share commute: both are block diagonal in the
- * joint eigenbasis of those n . sigma, with blocks that act on different wires.
- * Method: the commutators C_P = [U, P_w] for P = X, Y, Z are linear in P; the null vector of their 3 x 3 Gram matrix
- * Re Tr(C_P^dag C_Q) is the axis. More than one null vector: the gate does nothing on that wire.
+ * A gate has axis n on a wire when it commutes with n . sigma there (n = z for a control or a phase, x for the
+ * target of a CX). Two gates that have the same axis on every wire they share commute: both are block diagonal
+ * in the joint eigenbasis of those n . sigma, with blocks that act on different wires.
+ * Method: the commutators C_P = [U, P_w] for P = X, Y, Z are linear in P; the null vector of their 3 x 3 Gram
+ * matrix Re Tr(C_P^dag C_Q) is the axis. More than one null vector: the gate does nothing on that wire.
  * Limits: gates on more than `AXIS_WIRES_MAX` wires have axes only on their controls.
  */
 import type { GateOperation, Operation } from '../circuit/circuit.ts';

@@ -39,7 +39,9 @@ function isSame({ rows }: Relation, other: Relation): boolean {
   return rows.every((row, k) => row.every((word, w) => word === other.rows[k]![w]));
 }
 
-/** With gates taken together where the whole commutes with more; the same object when there is nothing to take. */
+/**
+ * With gates taken together where the whole commutes with more; the same object when there is nothing to take.
+ */
 function withBlocks(plain: StructureOfLives, rules: StructureRules): StructureOfLives {
   const { axesOf } = plain;
   const merged = mergeBlocks(plain.circuit, axesOf);

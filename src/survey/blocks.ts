@@ -1,14 +1,15 @@
 /**
- * Takes neighbouring gates together where the whole commutes with more than its parts: CX, Rz, CX is one ZZ rotation,
- * a ladder of CX around an Rz is a product of Zs, a Toffoli in CX and T is a control on two wires.
+ * Takes neighbouring gates together where the whole commutes with more than its parts: CX, Rz, CX is one ZZ
+ * rotation, a ladder of CX around an Rz is a product of Zs, a Toffoli in CX and T is a control on two wires.
  *
- * From each gate on, along a set of carriers, gates join one after the other (as windows grow, `window-search.ts`,
- * forward only, so the block is convex); the first block whose matrix has an axis on every carrier, while some carrier
- * had gates of different axes in it, is taken as one gate. Again on the result, so blocks of blocks are found. Tested
- * by matrices, not by names.
- * A block is emitted as the gates it was made of. It happens in one piece, so it is only taken where every output of
- * it needed every input anyway.
- * Cost: for each gate a few sets of carriers, for each a few small matrices. Limit: `BLOCK_NODES_MAX` operations.
+ * From each gate on, along a set of carriers, gates join one after the other (as windows grow,
+ * `window-search.ts`, forward only, so the block is convex); the first block whose matrix has an axis on every
+ * carrier, while some carrier had gates of different axes in it, is taken as one gate. Again on the result, so
+ * blocks of blocks are found. Tested by matrices, not by names.
+ * A block is emitted as the gates it was made of. It happens in one piece, so it is only taken where every
+ * output of it needed every input anyway.
+ * Cost: for each gate a few sets of carriers, for each a few small matrices. Limit: `BLOCK_NODES_MAX`
+ * operations.
  */
 import { type GateOperation, operationWires, unitaryGate } from '../circuit/circuit.ts';
 import { applyGateInto } from '../circuit/unitary.ts';

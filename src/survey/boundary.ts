@@ -2,12 +2,12 @@
  * Takes away what has no effect because of how a circuit begins and ends.
  *
  * - `zero`: a gate that only controls on, or puts a phase on, a carrier still in |0> (or |1>) loses that wire.
- * - `dead`: a gate at the very end of carriers that are measured (where it is a mere control or phase) or dropped
- *   changes no probability, and goes.
- * - `xor`: a final permutation gate (CX, Toffoli) whose wires are all measured becomes a classical assignment to the
- *   target's bit after all measurements.
- * Sound because a gate that goes commutes with all that stays behind it: it shares their axis on every common carrier
- * (`axes.ts`). Bits that are written or read elsewhere are left alone.
+ * - `dead`: a gate at the very end of carriers that are measured (where it is a mere control or phase) or
+ *   dropped changes no probability, and goes.
+ * - `xor`: a final permutation gate (CX, Toffoli) whose wires are all measured becomes a classical assignment
+ *   to the target's bit after all measurements.
+ * Sound because a gate that goes commutes with all that stays behind it: it shares their axis on every common
+ * carrier (`axes.ts`). Bits that are written or read elsewhere are left alone.
  */
 import {
   type AssignOperation,
@@ -98,7 +98,10 @@ function withoutKnown(
 
 /** What may still come before the end of a carrier without being noticed. */
 type Tail =
-  /** Nothing that stays has acted yet, counted from the end; what acts along `axis` goes unnoticed (null: anything). */
+  /**
+   * Nothing that stays has acted yet, counted from the end; what acts along `axis` goes unnoticed (null:
+   * anything).
+   */
   { axis: Axis | null; isBare: boolean } | 'closed';
 
 function backward(

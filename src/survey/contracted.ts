@@ -1,6 +1,6 @@
 /**
- * A circuit in which windows are single nodes, in an order in which everything can happen; null when two windows
- * would have to wait for each other.
+ * A circuit in which windows are single nodes, in an order in which everything can happen; null when two
+ * windows would have to wait for each other.
  */
 import { bitsRead, bitWritten, operationWires } from '../circuit/circuit.ts';
 import type { LifeCircuit, LifeNode } from './lives.ts';
@@ -36,7 +36,9 @@ export function contracted(
   return { ...circuit, nodes: out };
 }
 
-/** Representatives in an order that keeps every carrier's and bit's order, the earliest first; null on a cycle. */
+/**
+ * Representatives in an order that keeps every carrier's and bit's order, the earliest first; null on a cycle.
+ */
 function sorted({ lives, nodes, bits }: LifeCircuit, standsAt: Int32Array): number[] | null {
   const after: number[][] = nodes.map(() => []);
   const waits = new Int32Array(nodes.length);

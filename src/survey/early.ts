@@ -2,9 +2,9 @@
  * The relation with everything that the contract allows without changing what the gates do: commutation, early
  * measurement, and the rules at the boundary.
  *
- * Early measurement: the trailing gates on a measured output that only control or put a phase there may come after
- * its measurement, as conditions on the bit. Such a gate still waits for the bit, so the order between outcomes is
- * kept: whoever needs the gate needs the measured wire to have entered before.
+ * Early measurement: the trailing gates on a measured output that only control or put a phase there may come
+ * after its measurement, as conditions on the bit. Such a gate still waits for the bit, so the order between
+ * outcomes is kept: whoever needs the gate needs the measured wire to have entered before.
  */
 import type { Circuit } from '../circuit/circuit.ts';
 import type { Contract } from '../contract.ts';

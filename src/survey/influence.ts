@@ -10,9 +10,10 @@
  * bound: the four Paulis twirl W = u v^dag over the output wire, so sum_P ||u^dag P u - v^dag P v||^2 = 8d -
  * 4 ||Tr_i W||^2 with ||Tr_i W||^2 >= |Tr W|^2 / (d/2); and v^dag P v is trivial on the input.
  * Method: split the rows of u by the output's bit into A (0) and B (1). Then X', Y' are made of K = A^dag B and
- * Z' = 1 - 2 B^dag B, and sum_P s_P^2 = 4 (N(K) + N(B^dag B)) / d, N(M) = the squared norm of the part of M that
- * acts on wire j = ||M01||^2 + ||M10||^2 + ||M00 - M11||^2 / 2 in blocks of that wire: no cancellation.
- * Cost: one and a half (2^n x 2^(n-1) x 2^n) complex products per output, 6 n 8^n flops in all; 4^(n-m) times less for an output that only m inputs reach.
+ * Z' = 1 - 2 B^dag B, and sum_P s_P^2 = 4 (N(K) + N(B^dag B)) / d, N(M) = the squared norm of the part of M
+ * that acts on wire j = ||M01||^2 + ||M10||^2 + ||M00 - M11||^2 / 2 in blocks of that wire: no cancellation.
+ * Cost: one and a half (2^n x 2^(n-1) x 2^n) complex products per output, 6 n 8^n flops in all; 4^(n-m) times
+ * less for an output that only m inputs reach.
  * Limits: `INFLUENCE_WIRES_MAX` wires.
  */
 import { inputsOf, type Relation } from './relation.ts';
@@ -31,8 +32,8 @@ export function influenceFloor(n: number): number {
 }
 
 /**
- * `reach`: inputs that can influence each output at all (light cones). The others are left out of the products: what
- * is pulled back is trivial there, so the columns with these inputs at 0 tell everything.
+ * `reach`: inputs that can influence each output at all (light cones). The others are left out of the
+ * products: what is pulled back is trivial there, so the columns with these inputs at 0 tell everything.
  */
 export function influenceTables(u: Float64Array, n: number, reach?: Relation): InfluenceTables {
   const kept = new Float64Array(n * n);
@@ -57,8 +58,8 @@ export function influenceTables(u: Float64Array, n: number, reach?: Relation): I
 }
 
 /**
- * out[c] = the c-th column of u among those with all inputs but the given ones at 0, only the rows in which the output's bit
- * has the given value: 2^m x 2^(n-1), planar.
+ * out[c] = the c-th column of u among those with all inputs but the given ones at 0, only the rows in which
+ * the output's bit has the given value: 2^m x 2^(n-1), planar.
  */
 function columnsWhere(
   u: Float64Array,
@@ -91,7 +92,8 @@ function columnsWhere(
 }
 
 /**
- * out[i d + j] = sum_r conj(a[i, r]) b[j, r] for planar a, b of d x m, two rows of each at a time (in registers);
+ * out[i d + j] = sum_r conj(a[i, r]) b[j, r] for planar a, b of d x m, two rows of each at a time (in
+ * registers);
  * `hermitian`: a = b, and half of it is copied. d is even.
  */
 function dots(

@@ -1,9 +1,9 @@
 /**
  * Light cones: which inputs each output can depend on, from the gates alone.
  *
- * Output i needs input j when a path of operations leads from j to i, in the order in which they are written. Swaps
- * only rename; barriers are no paths; a reset cuts its wire (after it the wire carries a fresh |0>); a condition is
- * a path from the measured wire to the gate. Outputs and inputs are the circuit's wires.
+ * Output i needs input j when a path of operations leads from j to i, in the order in which they are written.
+ * Swaps only rename; barriers are no paths; a reset cuts its wire (after it the wire carries a fresh |0>); a
+ * condition is a path from the measured wire to the gate. Outputs and inputs are the circuit's wires.
  */
 import type { Circuit } from '../circuit/circuit.ts';
 import type { Contract } from '../contract.ts';

@@ -1,9 +1,10 @@
 /**
- * Turns a circuit into carriers: one per stretch of a wire between two resets, so that reuse can be planned anew.
+ * Turns a circuit into carriers: one per stretch of a wire between two resets, so that reuse can be planned
+ * anew.
  *
- * A carrier brings one input of the original (or a fresh |0> after a reset), is acted on, and ends as one output of
- * the original (or just before a reset). Swaps only rename carriers. Barriers keep no order here: they cost
- * nothing and change nothing.
+ * A carrier brings one input of the original (or a fresh |0> after a reset), is acted on, and ends as one
+ * output of the original (or just before a reset). Swaps only rename carriers. Barriers keep no order here:
+ * they cost nothing and change nothing.
  * Convention: carrier k < wires brings input k; carriers of later resets follow. Operations act on carriers.
  */
 import {

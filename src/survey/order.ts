@@ -2,11 +2,12 @@
  * The order that operations on carriers really need: those that commute on every shared carrier have none.
  *
  * On each carrier the operations form groups, one after the other; those within a group share an axis
- * (`axes.ts`) and commute, each group waits for the one before it. Bits add edges: a reader waits for the writer,
- * and a writer for earlier writers and readers.
- * Early measurement: a measured end has axis z, so it may come as soon as all groups before the last one are done
- * when that last group has axis z; what is left of the group becomes conditions on the bit. (The
- * deferred-measurement principle read backwards; Nielsen, Chuang, section 4.4; Griffiths, Niu, PRL 76, 3228 (1996).)
+ * (`axes.ts`) and commute, each group waits for the one before it. Bits add edges: a reader waits for the
+ * writer, and a writer for earlier writers and readers.
+ * Early measurement: a measured end has axis z, so it may come as soon as all groups before the last one are
+ * done when that last group has axis z; what is left of the group becomes conditions on the bit. (The
+ * deferred-measurement principle read backwards; Nielsen, Chuang, section 4.4; Griffiths, Niu, PRL 76, 3228
+ * (1996).)
  * Closure: what the end of a carrier needs is every carrier touched by the operations that must come before it.
  * Cost: linear in operations, times lives / 32 words for the closures.
  */
@@ -48,7 +49,8 @@ function walkGroups(
     if (end >= 0) {
       const axis = open[end];
       const { rule, bit } = lives[end]!;
-      // what is left over becomes conditions on the bit: it must keep its value, and only gates can be conditioned
+      // what is left over becomes conditions on the bit: it must keep its value, and only gates can be
+      // conditioned
       const isKept = bit < 0 || lastWriter[bit] === node;
       const isEarly = rule === 'measured' && isKept && !measures[end] && axis !== undefined;
       visit.end(node, end, rules.early && isEarly && isZ(axis));

@@ -1,11 +1,12 @@
 /**
  * Finds influence on circuits too large for a matrix, by following states.
  *
- * For input j, with random product states on the other wires, the circuit carries |0>_j to psi_0 and |1>_j to psi_1.
+ * For input j, with random product states on the other wires, the circuit carries |0>_j to psi_0 and |1>_j to
+ * psi_1.
  * From the 2 x 2 matrices r_ab = Tr_rest |psi_a><psi_b| on an output, the output's state for every state of j
  * follows: it is the same for all of them iff r_00 = r_11 and r_01 = 0.
- * Shape: tables as in influence.ts, [output * n + input]. `kept`: half the largest trace distance seen between the
- * output's states for two opposite states of j; a circuit without that influence is wrong by at least this
+ * Shape: tables as in influence.ts, [output * n + input]. `kept`: half the largest trace distance seen between
+ * the output's states for two opposite states of j; a circuit without that influence is wrong by at least this
  * for one of the two. `measured`: the same for the probability of the bit.
  * A difference seen is certain. None seen means none with probability one, but is no proof.
  * Cost: 2 n evolutions of 2^n amplitudes for each probe. Limit: `PROBE_WIRES_MAX` wires.
@@ -96,7 +97,10 @@ function putProductState(
   }
 }
 
-/** How much an output changes between opposite states of the input, from its two evolved basis states (neighbouring columns). */
+/**
+ * How much an output changes between opposite states of the input, from its two evolved basis states
+ * (neighbouring columns).
+ */
 function changeAt(
   states: Float64Array,
   columns: number,

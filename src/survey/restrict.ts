@@ -1,8 +1,8 @@
 /**
  * What is left of a gate when one of its wires is known to be in |0> or |1>, or has been measured.
  *
- * The gate must have axis z on that wire: it is then |0><0| x A_0 + |1><1| x A_1, and A_value is what remains on the
- * other wires, up to a phase (which is global, because the wire's value is one number in every branch).
+ * The gate must have axis z on that wire: it is then |0><0| x A_0 + |1><1| x A_1, and A_value is what remains
+ * on the other wires, up to a phase (which is global, because the wire's value is one number in every branch).
  * Method: A_value is a block of the gate's matrix; it is recognised as a gate of the table where it is one.
  */
 import { assert } from '../assert.ts';

@@ -5,8 +5,9 @@
  * rest: width = 1 + max_k ceil(log2 rank_k), the least over all orders by dynamic programming over sets.
  * Source: sequential generation, Schoen, Solano, Verstraete, Cirac, Wolf, PRL 95, 110503 (2005).
  * Shape: state has 2^n amplitudes, planar.
- * Fewer wires: a state of rank at most 2^(wires - 1) across a cut overlaps with this one by at most the sum of so many
- * largest squared coefficients (Eckart, Young, Psychometrika 1, 211 (1936)); the least worst cut over all orders.
+ * Fewer wires: a state of rank at most 2^(wires - 1) across a cut overlaps with this one by at most the sum of
+ * so many largest squared coefficients (Eckart, Young, Psychometrika 1, 211 (1936)); the least worst cut over
+ * all orders.
  * Cost: 2^(n-1) singular value decompositions. Limit: `STATE_WIDTH_WIRES_MAX` wires.
  */
 import { svd } from '../numeric/svd.ts';

@@ -1,6 +1,6 @@
 /**
- * The part of a survey that looks beyond structure: dense influence where a matrix is possible, probes with states
- * beyond, and windows of a few wires at any size.
+ * The part of a survey that looks beyond structure: dense influence where a matrix is possible, probes with
+ * states beyond, and windows of a few wires at any size.
  */
 import type { Circuit } from '../circuit/circuit.ts';
 import { circuitUnitary } from '../circuit/unitary.ts';
@@ -87,8 +87,8 @@ export function causalPart(
 }
 
 /**
- * What windows of a few wires allow for kept outputs and any input; null when none lowers the width, or when there are too
- * many operations to search.
+ * What windows of a few wires allow for kept outputs and any input; null when none lowers the width, or when
+ * there are too many operations to search.
  */
 export function windowsPart(circuit: Circuit, options: SurveyOptions): CausalPart | null {
   const { control = freeRunning } = options;

@@ -2,8 +2,9 @@
  * Measures how many wires a circuit really needs: by structure, by structure and early measurement, and by
  * influence, with one row for each contract.
  *
- * Where a dense matrix is possible (`INFLUENCE_WIRES_MAX` wires, nothing measured or reset on the way) influence is
- * exact; beyond, up to `options.probeWiresMax` wires, it is probed with states; else only structure is told.
+ * Where a dense matrix is possible (`INFLUENCE_WIRES_MAX` wires, nothing measured or reset on the way)
+ * influence is exact; beyond, up to `options.probeWiresMax` wires, it is probed with states; else only
+ * structure is told.
  */
 import type { Circuit } from '../circuit/circuit.ts';
 import { contractOf } from '../circuit/contract.ts';
@@ -188,8 +189,8 @@ function zeroRow(circuit: Circuit, byOrder: number): WidthRow | null {
 }
 
 /**
- * For each smaller number of wires the least threshold at which forgetting weaker influence makes the width small
- * enough: every circuit with so few wires must be without one influence at least that strong.
+ * For each smaller number of wires the least threshold at which forgetting weaker influence makes the width
+ * small enough: every circuit with so few wires must be without one influence at least that strong.
  */
 function prices(
   { kept, keptFloor }: InfluencePart,

@@ -1,7 +1,10 @@
 /** The gates of a circuit whose measurements all come last on their wires. */
 import type { Circuit, GateOperation } from '../circuit/circuit.ts';
 
-/** The circuit less its final measurements and barriers; null when it measures, resets or decides before its end. */
+/**
+ * The circuit less its final measurements and barriers; null when it measures, resets or decides before its
+ * end.
+ */
 export function unitaryPart(circuit: Circuit): Circuit | null {
   const gates: GateOperation[] = [];
   const ended = new Set<number>();

@@ -1,12 +1,12 @@
 /**
  * Lower bounds on the width of a relation.
  *
- * - Before the k-th output leaves, at least as many inputs are there as the k-th smallest row needs: the width is at least
- *   size_(k) - (k - 1); the same for the time reverse (columns).
+ * - Before the k-th output leaves, at least as many inputs are there as the k-th smallest row needs: the width
+ *   is at least size_(k) - (k - 1); the same for the time reverse (columns).
  * - Where output k needs input k for all k (one carrier each), the pairs that need each other form a graph whose
- *   pathwidth is at most width - 1. Pathwidth is at least treewidth, which is bounded by contracting the vertex of
- *   least degree into its neighbour of least degree again and again (contraction degeneracy; Bodlaender, Koster,
- *   Wolle, "Contraction and treewidth lower bounds", J. Graph Algorithms Appl. 10, 5 (2006)).
+ *   pathwidth is at most width - 1. Pathwidth is at least treewidth, which is bounded by contracting the vertex
+ *   of least degree into its neighbour of least degree again and again (contraction degeneracy; Bodlaender,
+ *   Koster, Wolle, "Contraction and treewidth lower bounds", J. Graph Algorithms Appl. 10, 5 (2006)).
  * Cost: n^2 log n or so.
  */
 import { bitCount, emptyRelation, type Relation, relate, relates } from './relation.ts';

@@ -1,14 +1,15 @@
 /**
  * Searches for an order of outputs that needs few wires, where sets of outputs are too many to go through.
  *
- * A state is the set of inputs that have entered: every output whose inputs are all there has left. Two moves are
- * always right and taken at once: letting such an output leave, and, when there is none, entering the one input that
- * some output still waits for alone (whatever comes next needs at least one more wire too, and afterwards no more
- * are held than before).
- * Beam search: layers by the number of outputs that have left; each keeps the best states by width, wires held, and
- * what the next output costs; equal sets of inputs are kept once. Run forward and on the time reverse.
- * Branch and bound: depth first for a width one below the best known, remembering dead sets; when it comes to an end
- * without a plan the lower bound is raised. It stops after a number of steps, never by time.
+ * A state is the set of inputs that have entered: every output whose inputs are all there has left. Two moves
+ * are always right and taken at once: letting such an output leave, and, when there is none, entering the one
+ * input that some output still waits for alone (whatever comes next needs at least one more wire too, and
+ * afterwards no more are held than before).
+ * Beam search: layers by the number of outputs that have left; each keeps the best states by width, wires
+ * held, and what the next output costs; equal sets of inputs are kept once. Run forward and on the time
+ * reverse.
+ * Branch and bound: depth first for a width one below the best known, remembering dead sets; when it comes to
+ * an end without a plan the lower bound is raised. It stops after a number of steps, never by time.
  * Cost: `effort` million steps.
  */
 import { random } from '../numeric/random.ts';

@@ -1,13 +1,15 @@
 /**
  * Finds the order in which outputs leave that needs the fewest wires.
  *
- * Given which inputs each output needs, emitting outputs in the order o1, o2, ... holds, just before o_k leaves,
- * |N(o1) u ... u N(o_k)| - (k - 1) wires; the width is the smallest maximum over all orders, at least 1. (For one
- * layer of commuting two-wire gates this is the pathwidth of the interaction graph plus one.)
- * Method: up to `EXACT_OUTPUTS_MAX` outputs, dynamic programming over sets of outputs (the union of a set is that of
- * the set less its lowest bit), unless a short search proves its answer. Beyond, beam search in both directions of time (a circuit and its reverse have
- * equal widths; arXiv:2210.08039), a lower bound, and branch and bound between the two (`width-search.ts`).
- * Ties: when exact, high outputs leave late; beyond, fixed by the search: the same relation gives the same order.
+ * Given which inputs each output needs, emitting outputs in the order o1, o2, ... holds, just before o_k
+ * leaves, |N(o1) u ... u N(o_k)| - (k - 1) wires; the width is the smallest maximum over all orders, at least
+ * 1. (For one layer of commuting two-wire gates this is the pathwidth of the interaction graph plus one.)
+ * Method: up to `EXACT_OUTPUTS_MAX` outputs, dynamic programming over sets of outputs (the union of a set is
+ * that of the set less its lowest bit), unless a short search proves its answer. Beyond, beam search in both
+ * directions of time (a circuit and its reverse have equal widths; arXiv:2210.08039), a lower bound, and
+ * branch and bound between the two (`width-search.ts`).
+ * Ties: when exact, high outputs leave late; beyond, fixed by the search: the same relation gives the same
+ * order.
  * Cost: 2^n n steps and 6 x 2^n bytes when exact.
  */
 import type { Relation } from './relation.ts';

@@ -1,10 +1,11 @@
 /**
- * Finds windows: convex sets of neighbouring gates on few carriers whose influence is sparser than their structure.
+ * Finds windows: convex sets of neighbouring gates on few carriers whose influence is sparser than their
+ * structure.
  *
- * For a gate and a set S of carriers around it, the window grows forward and backward along S: a gate that lies in S
- * and whose carriers are not blocked joins; any other operation blocks its carriers in S from there on. A path that
- * left the window and came back would have to pass a blocked carrier, so the window is convex: its gates can
- * happen as one.
+ * For a gate and a set S of carriers around it, the window grows forward and backward along S: a gate that
+ * lies in S and whose carriers are not blocked joins; any other operation blocks its carriers in S from there
+ * on. A path that left the window and came back would have to pass a blocked carrier, so the window is convex:
+ * its gates can happen as one.
  * Influence: `survey/influence.ts` on the window's own matrix; structure is what commutation allows inside it.
  * Cost: for each gate a few sets S, each with a 2^|S| x 2^|S| matrix and its influence table.
  */

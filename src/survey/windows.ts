@@ -1,10 +1,10 @@
 /**
  * Chooses the windows whose influence, in place of their structure, lets the whole circuit do with fewer wires.
  *
- * Taking a window as one gate of which only the influence counts can only loosen the relation between carriers, so
- * compatible windows (no common gate, no cycle between them) are taken greedily, in several orders of preference;
- * then windows left out are tried in place of those in their way; the windows without which the width stays the
- * same are given back, the longest first.
+ * Taking a window as one gate of which only the influence counts can only loosen the relation between
+ * carriers, so compatible windows (no common gate, no cycle between them) are taken greedily, in several
+ * orders of preference; then windows left out are tried in place of those in their way; the windows without
+ * which the width stays the same are given back, the longest first.
  * Cost: linear in windows times nodes, and one width plan for each window taken.
  */
 import { contracted } from './contracted.ts';

@@ -1,6 +1,7 @@
 /**
- * Simulates a circuit branch by branch: every measurement splits the state in two, so conditions, resets and wires
- * used again mean what they say. An independent road for tests: it shares only the matrices of gates with src.
+ * Simulates a circuit branch by branch: every measurement splits the state in two, so conditions, resets and
+ * wires used again mean what they say. An independent road for tests: it shares only the matrices of gates
+ * with src.
  *
  * Result: for each value of the observed bits, the (unnormalised) density matrix of the kept outputs.
  */

@@ -47,9 +47,9 @@ function layer(n: number, edges: readonly Edge[], seed: number): Circuit {
 }
 
 describe('brickwork of depth k on a line: width k + 1', () => {
-  // From the left each layer widens a light cone by one wire to the right; the left partner of a last-layer gate
-  // needs k wires beyond itself and its right partner k - 1, so k + 1 wires suffice. The exact planner finds no less
-  // on lines long enough (n > k), and n wires are enough in any case.
+  // From the left each layer widens a light cone by one wire to the right; the left partner of a last-layer
+  // gate needs k wires beyond itself and its right partner k - 1, so k + 1 wires suffice. The exact planner
+  // finds no less on lines long enough (n > k), and n wires are enough in any case.
   for (const k of [1, 2, 3, 4, 5, 6]) {
     test.each([k + 2, 13, 16])(`depth ${k} on %i wires`, (n) => {
       const plan = planWidth(structuralRelation(brickwork(n, k)));

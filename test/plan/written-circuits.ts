@@ -27,7 +27,10 @@ export function toffoli(a: number, b: number, c: number): GateOperation[] {
   ];
 }
 
-/** Ripple-carry sum of two n-bit numbers: carries go up through `a`, sums end in `b` (Cuccaro et al., quant-ph/0410184). */
+/**
+ * Ripple-carry sum of two n-bit numbers: carries go up through `a`, sums end in `b` (Cuccaro et al.,
+ * quant-ph/0410184).
+ */
 export function adder(n: number): Circuit {
   // wires: carry in 0, then b_k at 1 + 2k, a_k at 2 + 2k, carry out last
   const a = (k: number): number => (k < 0 ? 0 : 2 + 2 * k);
@@ -135,7 +138,10 @@ export function plaquette(): Circuit {
   return of('plaquette', 6, operations);
 }
 
-/** Phase estimation with t bits on one eigenstate wire, controlled phases as CX and Rz, inverse transform at the end. */
+/**
+ * Phase estimation with t bits on one eigenstate wire, controlled phases as CX and Rz, inverse transform at
+ * the end.
+ */
 export function phaseEstimation(t: number): Circuit {
   const operations: GateOperation[] = [];
   const cp = (a: number, b: number, angle: number): void => {
