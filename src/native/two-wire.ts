@@ -1,0 +1,164 @@
+/**
+ * Writes any two-wire gate with the fewest uses of a CX-like or adjustable entangler, exactly.
+ *
+ * Shape: u is 4 x 4, planar; the result is gates on wires 0 and 1 in order of time, single-wire ones as `unitary`
+ * operations, equal to u up to a phase.
+ * Method: a core of the right class is written down, and the local gates around it follow from the canonical
+ * decompositions of both: if u = A N(c) B and core = A' N(c) B', then u = (A A'^-1) core (B'^-1 B).
+ *   1 CX   the CX itself;
+ *   2 CX   CX (Rx(-2 c1) x Rz(-2 c2)) CX has coordinates (c1, c2, 0), because CX carries X1 to XX and 1Z to ZZ;
+ *   3 CX   Vatan, Williams, PRA 69, 032315 (2004), figure 6.
+ *   adjustable interaction E(t) in the class (t', 0, 0): one use per coordinate that is not zero.
+ * Counts are minimal for CX: Shende, Bullock, Markov, PRA 70, 012310 (2004). CZ, ECR and every other entangler of the
+ * class (pi/4, 0, 0) is a CX up to local gates and takes its place.
+ * Fails: returns undefined for entanglers of other classes; the caller then fits.
+ */
+import { type GateOperation, gate, unitaryGate } from '../circuit/circuit.ts';
+import { gateMatrix } from '../circuit/unitary.ts';
+import { adjoint, identity, kron, mul } from '../numeric/complex-matrix.ts';
+import type { Entangler } from '../reshape/template.ts';
+import { entanglerMatrix } from '../reshape/template.ts';
+import { type Canonical, canonical, cxCount, WALL_TOLERANCE } from './canonical.ts';
+
+const QUARTER = Math.PI / 4;
+
+/** How an entangler is used: as a CX with local gates around it, or with its angle set. */
+export type EntanglerUse =
+  | { kind: 'cx-like'; entangler: Entangler; frame: Canonical }
+  | { kind: 'adjustable'; entangler: Entangler; slope: number }
+  | { kind: 'other'; entangler: Entangler };
+
+export function entanglerUse(entangler: Entangler): EntanglerUse {
+  if (entangler.angle === 'free') {
+    // the first coordinate grows in proportion to the angle for the interactions of the table
+    const small = 0.1;
+    const [c1, c2, c3] = canonical(entanglerMatrix(entangler, small)).c;
+    const isOneAxis = c2 < WALL_TOLERANCE && Math.abs(c3) < WALL_TOLERANCE;
+    return isOneAxis
+      ? { kind: 'adjustable', entangler, slope: c1 / small }
+      : { kind: 'other', entangler };
+  }
+  const frame = canonical(entanglerMatrix(entangler));
+  const [c1, c2, c3] = frame.c;
+  const isCx =
+    Math.abs(c1 - QUARTER) < WALL_TOLERANCE && c2 < WALL_TOLERANCE && Math.abs(c3) < WALL_TOLERANCE;
+  return isCx ? { kind: 'cx-like', entangler, frame } : { kind: 'other', entangler };
+}
+
+/** Fewest uses of the entangler for this gate, or undefined where this file cannot tell. */
+export function usesNeeded(u: Float64Array, use: EntanglerUse): number | undefined {
+  const { c } = canonical(u);
+  if (use.kind === 'cx-like') return cxCount(c);
+  if (use.kind === 'adjustable') return c.filter((x) => Math.abs(x) > WALL_TOLERANCE).length;
+  return Math.max(...c.map(Math.abs)) < WALL_TOLERANCE ? 0 : undefined;
+}
+
+/** The gate in uses of the entangler and single-wire unitaries; undefined for entanglers of other classes. */
+export function twoWireGates(u: Float64Array, use: EntanglerUse): GateOperation[] | undefined {
+  const wanted = canonical(u);
+  const [c1, c2, c3] = wanted.c;
+  const core = coreFor(wanted.c, use);
+  if (!core) return undefined;
+  if (core.length === 0) {
+    // a product: both local layers at once
+    const rest = mul(kron(wanted.a1, wanted.a2, 2, 2), kron(wanted.b1, wanted.b2, 2, 2), 4);
+    void rest;
+    return local(mul(wanted.a1, wanted.b1, 2), mul(wanted.a2, wanted.b2, 2));
+  }
+  void [c1, c2, c3];
+  const made = canonical(matrixOf(core));
+  // u = A N B, core = A' N B'
+  const before = local(
+    mul(adjoint(made.b1, 2), wanted.b1, 2),
+    mul(adjoint(made.b2, 2), wanted.b2, 2),
+  );
+  const after = local(
+    mul(wanted.a1, adjoint(made.a1, 2), 2),
+    mul(wanted.a2, adjoint(made.a2, 2), 2),
+  );
+  return [...before, ...core, ...after];
+}
+
+function local(first: Float64Array, second: Float64Array): GateOperation[] {
+  return [unitaryGate(first, [0]), unitaryGate(second, [1])];
+}
+
+function matrixOf(operations: readonly GateOperation[]): Float64Array {
+  let out = identity(4);
+  for (const operation of operations) {
+    const matrix = gateMatrix(operation);
+    const wide =
+      operation.wires.length === 2
+        ? matrix
+        : operation.wires[0] === 0
+          ? kron(matrix, identity(2), 2, 2)
+          : kron(identity(2), matrix, 2, 2);
+    out = mul(wide, out, 4);
+  }
+  return out;
+}
+
+function coreFor(
+  [c1, c2, c3]: readonly [number, number, number],
+  use: EntanglerUse,
+): GateOperation[] | undefined {
+  if (Math.max(c1, c2, Math.abs(c3)) < WALL_TOLERANCE) return [];
+  if (use.kind === 'adjustable') return adjustableCore([c1, c2, c3], use);
+  if (use.kind !== 'cx-like') return undefined;
+  const cx = (): GateOperation[] => asCx(use);
+  const count = cxCount([c1, c2, c3]);
+  if (count === 1) return cx();
+  if (count === 2) {
+    return [...cx(), gate('rx', [0], -2 * c1), gate('rz', [1], -2 * c2), ...cx()];
+  }
+  const reversed = cx().map((op) => ({ ...op, wires: op.wires.map((w) => 1 - w) }));
+  return [
+    ...reversed,
+    gate('rz', [0], 2 * c3 - Math.PI / 2),
+    gate('ry', [1], Math.PI / 2 - 2 * c1),
+    ...cx(),
+    gate('ry', [1], 2 * c2 - Math.PI / 2),
+    ...reversed,
+  ];
+}
+
+/** A CX on wires 0, 1 by one use of the entangler; bare when it is one. */
+function asCx({ entangler, frame }: EntanglerUse & { kind: 'cx-like' }): GateOperation[] {
+  const bare = useOf(entangler);
+  if (!entangler.matrix && (entangler.name === 'cx' || entangler.name === 'CX')) return [bare];
+  const cx = canonical(gateMatrix(gate('cx', [0, 1])));
+  return [
+    ...local(mul(adjoint(frame.b1, 2), cx.b1, 2), mul(adjoint(frame.b2, 2), cx.b2, 2)),
+    bare,
+    ...local(mul(cx.a1, adjoint(frame.a1, 2), 2), mul(cx.a2, adjoint(frame.a2, 2), 2)),
+  ];
+}
+
+function useOf(entangler: Entangler, angle?: number): GateOperation {
+  if (entangler.matrix) return unitaryGate(entangler.matrix, [0, 1], entangler.name);
+  return angle === undefined ? gate(entangler.name, [0, 1]) : gate(entangler.name, [0, 1], angle);
+}
+
+/** exp(i c1 XX) exp(i c2 YY) exp(i c3 ZZ), each from one use with local gates around it. */
+function adjustableCore(
+  c: readonly [number, number, number],
+  { entangler, slope }: EntanglerUse & { kind: 'adjustable' },
+): GateOperation[] {
+  const out: GateOperation[] = [];
+  c.forEach((coordinate, axis) => {
+    if (Math.abs(coordinate) < WALL_TOLERANCE) return;
+    const piece = useOf(entangler, Math.abs(coordinate) / slope);
+    const wanted = interaction(coordinate, axis);
+    const [w, made] = [canonical(wanted), canonical(gateMatrix(piece))];
+    out.push(
+      ...local(mul(adjoint(made.b1, 2), w.b1, 2), mul(adjoint(made.b2, 2), w.b2, 2)),
+      piece,
+      ...local(mul(w.a1, adjoint(made.a1, 2), 2), mul(w.a2, adjoint(made.a2, 2), 2)),
+    );
+  });
+  return out;
+}
+
+function interaction(coordinate: number, axis: number): Float64Array {
+  return gateMatrix(gate(['rxx', 'ryy', 'rzz'][axis]!, [0, 1], -2 * coordinate));
+}
