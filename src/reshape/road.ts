@@ -1,0 +1,197 @@
+/**
+ * Chooses how a circuit is to be narrowed, or says why it cannot be.
+ *
+ * Order: what structure gives stands, unless the matrix allows fewer wires and these are wanted; then the chain
+ * of blocks along the causal order; then, for kept outputs, the nearest chain within the tolerance. What is left
+ * is impossible, with a bound, or, where no matrix could be had, undecided.
+ */
+import { type Circuit, wireName } from '../circuit/circuit.ts';
+import { type Contract, contractName } from '../contract.ts';
+import { distanceFromInfidelity } from '../numeric/distance.ts';
+import { type NarrowedCircuit, narrowByStructure } from '../plan/structure.ts';
+import { INFLUENCE_WIRES_MAX } from '../survey/influence.ts';
+import {
+  type Attempt,
+  attemptChain,
+  type CausalWidth,
+  causalWidth,
+  type Question,
+  shortfall,
+} from './causal-width.ts';
+import type { ChainPlan } from './chain.ts';
+import { unitaryOf } from './unitary-part.ts';
+
+export type Bracket = { lower: number; reached: number | null };
+
+export type Road =
+  | { kind: 'structure'; reason: string; narrowed: NarrowedCircuit }
+  | { kind: 'chain'; reason: string; question: Question; attempt: Attempt; bracket: Bracket }
+  | { kind: 'feed-forward'; reason: string; question: Question; plan: ChainPlan; width: number }
+  | { kind: 'impossible'; reason: string; bracket: Bracket | null }
+  | { kind: 'undecided'; reason: string; bracket: Bracket | null };
+
+export type Wish = {
+  circuit: Circuit;
+  contract: Contract;
+  /** Number of wires wanted; undefined: the fewest. */
+  wires: number | undefined;
+  /** On the distance D. */
+  tolerance: number;
+  stopped(): boolean;
+};
+
+export function chooseRoad(wish: Wish): Road {
+  const { circuit, wires: wanted } = wish;
+  const n = circuit.wires;
+  const narrowed = narrowByStructure(circuit, wish.contract, {
+    ...(wanted === undefined ? {} : { wires: wanted }),
+  });
+  const structural = narrowed.circuit.wires;
+  if (wanted !== undefined && structural <= wanted) return byStructure(narrowed, n);
+  const u = structural > 1 ? unitaryOf(circuit, INFLUENCE_WIRES_MAX) : null;
+  if (!u) return withoutMatrix(wish, narrowed);
+  const measured = wish.contract.outputs.map((rule) => rule === 'measured');
+  const question = { u, wires: n, measured, stopped: wish.stopped };
+  const causal = causalWidth(question);
+  const goal = wanted ?? causal.width;
+  if (causal.width < structural && causal.width <= goal) {
+    // feed-forward only where it saves wires
+    const asKept = { ...question, measured: measured.map(() => false) };
+    const quantum = measured.includes(true) ? causalWidth(asKept) : causal;
+    const isEnough = quantum.width <= Math.max(causal.width, wanted ?? 0);
+    return isEnough
+      ? byChain(asKept, quantum, structural)
+      : byFeedForward(question, causal, structural);
+  }
+  const nearest = measured.includes(true)
+    ? null
+    : withinTolerance(wish, question, causal, Math.min(structural, causal.width));
+  if (nearest?.kind === 'chain') return nearest;
+  if (wanted === undefined && structural < n) return byStructure(narrowed, n);
+  return nearest ?? impossibleMeasured(wish, causal);
+}
+
+function byStructure(narrowed: NarrowedCircuit, before: number): Road {
+  const { wires } = narrowed.circuit;
+  const reason =
+    wires < before
+      ? `the order of the gates alone allows ${count(wires)} instead of ${before}`
+      : `the circuit has ${count(wires)} as it is`;
+  return { kind: 'structure', reason, narrowed };
+}
+
+function withoutMatrix({ circuit, wires: wanted }: Wish, narrowed: NarrowedCircuit): Road {
+  const { wires } = narrowed.circuit;
+  if (wanted === undefined && wires < circuit.wires) return byStructure(narrowed, circuit.wires);
+  if (wires === 1 && circuit.wires === 1) {
+    const reason = 'a circuit of one wire cannot be narrowed';
+    return { kind: 'impossible', reason, bracket: null };
+  }
+  const why =
+    circuit.wires > INFLUENCE_WIRES_MAX
+      ? `its matrix is too large to decide more (${INFLUENCE_WIRES_MAX} wires is the limit here)`
+      : 'it measures, resets or decides on the way, so it has no matrix that could decide more';
+  const reason = `reordering the gates needs ${count(wires)}, and ${why}`;
+  return { kind: 'undecided', reason, bracket: null };
+}
+
+function openingReason(structural: number, width: number): string {
+  const order = `the order of the gates needs ${count(structural)}`;
+  return `${order}, but the influence of inputs on outputs allows ${width}`;
+}
+
+function byChain(question: Question, { plan, width }: CausalWidth, structural: number): Road {
+  const attempt = attemptChain(question, plan);
+  const bracket = { lower: 0, reached: attempt.distance };
+  const reason = openingReason(structural, width);
+  return { kind: 'chain', reason, question, attempt, bracket };
+}
+
+function byFeedForward(question: Question, { plan, width }: CausalWidth, structural: number): Road {
+  const reason = `${openingReason(structural, width)} when bits are measured as early as can be`;
+  return { kind: 'feed-forward', reason, question, plan, width };
+}
+
+/** Fewer wires than any exact circuit has: the nearest chain if it is near enough, else the bracket. */
+function withinTolerance(
+  { circuit, contract, wires: wanted, tolerance }: Wish,
+  question: Question,
+  { table, width }: CausalWidth,
+  exact: number,
+): Road | null {
+  const { u, wires: n } = question;
+  let best: Road | null = null;
+  let refusal: Road | null = null;
+  for (let fewer = wanted ?? exact - 1; fewer >= 1; fewer--) {
+    const { infidelity, leaves, enters, plan } = shortfall(u, n, fewer, table);
+    const lower = distanceFromInfidelity(infidelity);
+    const attempt = attemptChain(question, plan, 0.01 * tolerance);
+    const bracket = { lower, reached: attempt.distance };
+    if (attempt.distance <= tolerance) {
+      const reason =
+        `within the tolerance of ${tolerance} the influence of inputs on outputs allows ` +
+        count(fewer);
+      best = { kind: 'chain', reason, question, attempt, bracket };
+    } else if (!best) {
+      const pair = `${wireName(circuit, leaves)} leave before ${wireName(circuit, enters)} enters`;
+      const how = `any attempt is wrong by at least ${figures(infidelity)} in process infidelity`;
+      const exactly =
+        contractName(contract) === 'any/kept'
+          ? `no equal circuit has fewer than ${count(width)}`
+          : `no circuit that is equal for every input has fewer than ${count(width)}`;
+      const reason =
+        fewer === exact - 1
+          ? `${exactly}: none lets ${pair}; ${how}`
+          : `${exactly}, and ${count(fewer)} are wanted: ${how}`;
+      const reached = `; the nearest circuit found is at D = ${figures(attempt.distance)}`;
+      refusal = {
+        // between the bound and the nearest found lies what is not known
+        kind: lower <= tolerance ? 'undecided' : 'impossible',
+        reason: reason + reached,
+        bracket,
+      };
+    }
+    if (wanted !== undefined || attempt.distance > tolerance) break;
+  }
+  return best ?? refusal;
+}
+
+function impossibleMeasured({ circuit, contract, wires: wanted }: Wish, causal: CausalWidth): Road {
+  const n = circuit.wires;
+  const { table, width } = causal;
+  const weakest = leastOpen(table, n);
+  const scope = contract.inputs.includes('any')
+    ? `no equal circuit has fewer than ${count(width)}`
+    : `neither reordering nor any circuit that is equal for every input has fewer than ${count(width)}`;
+  const wish = wanted !== undefined && wanted < width ? `, and ${count(wanted)} are wanted` : '';
+  const { leaves, enters, value } = weakest;
+  const kind =
+    contract.outputs[leaves] === 'measured'
+      ? 'in the probability of its bit'
+      : 'in process infidelity';
+  const pair = `letting ${wireName(circuit, leaves)} leave before ${wireName(circuit, enters)} enters`;
+  const reason = `${scope}${wish}: even ${pair} is wrong by at least ${figures(value)} ${kind}`;
+  return { kind: 'impossible', reason, bracket: null };
+}
+
+/** The least entry of the table that is not rounding. */
+function leastOpen(
+  table: Float64Array,
+  n: number,
+): { leaves: number; enters: number; value: number } {
+  let best = { leaves: 0, enters: 0, value: Number.POSITIVE_INFINITY };
+  table.forEach((value, at) => {
+    const isOpen = value > 1e-10;
+    if (isOpen && value < best.value) best = { leaves: Math.floor(at / n), enters: at % n, value };
+  });
+  return best;
+}
+
+function count(wires: number): string {
+  return wires === 1 ? '1 wire' : `${wires} wires`;
+}
+
+/** A number to four figures, as people write it. */
+export function figures(value: number): string {
+  return value === 0 ? '0' : `${Number(value.toPrecision(4))}`;
+}
