@@ -7,14 +7,14 @@
  * decompositions of both: if u = A N(c) B and core = A' N(c) B', then u = (A A'^-1) core (B'^-1 B).
  *   1 CX   the CX itself;
  *   2 CX   CX (Rx(-2 c1) x Rz(-2 c2)) CX has coordinates (c1, c2, 0), because CX carries X1 to XX and 1Z to ZZ;
- *   3 CX   Vatan, Williams, PRA 69, 032315 (2004), figure 6.
+ *   3 CX   Vatan, Williams, PRA 69, 032315 (2004), figure 6 (its rotations turn the other way round).
  *   adjustable interaction E(t) in the class (t', 0, 0): one use per coordinate that is not zero.
  * Counts are minimal for CX: Shende, Bullock, Markov, PRA 70, 012310 (2004). CZ, ECR and every other entangler of the
  * class (pi/4, 0, 0) is a CX up to local gates and takes its place.
  * Fails: returns undefined for entanglers of other classes; the caller then fits.
  */
 import { type GateOperation, gate, unitaryGate } from '../circuit/circuit.ts';
-import { gateMatrix } from '../circuit/unitary.ts';
+import { applyGateInto, gateMatrix } from '../circuit/unitary.ts';
 import { adjoint, identity, kron, mul } from '../numeric/complex-matrix.ts';
 import type { Entangler } from '../reshape/template.ts';
 import { entanglerMatrix } from '../reshape/template.ts';
@@ -84,17 +84,8 @@ function local(first: Float64Array, second: Float64Array): GateOperation[] {
 }
 
 function matrixOf(operations: readonly GateOperation[]): Float64Array {
-  let out = identity(4);
-  for (const operation of operations) {
-    const matrix = gateMatrix(operation);
-    const wide =
-      operation.wires.length === 2
-        ? matrix
-        : operation.wires[0] === 0
-          ? kron(matrix, identity(2), 2, 2)
-          : kron(identity(2), matrix, 2, 2);
-    out = mul(wide, out, 4);
-  }
+  const out = identity(4);
+  for (const operation of operations) applyGateInto(out, operation, 2, 4);
   return out;
 }
 
@@ -114,10 +105,10 @@ function coreFor(
   const reversed = cx().map((op) => ({ ...op, wires: op.wires.map((w) => 1 - w) }));
   return [
     ...reversed,
-    gate('rz', [0], 2 * c3 - Math.PI / 2),
-    gate('ry', [1], Math.PI / 2 - 2 * c1),
+    gate('rz', [0], Math.PI / 2 - 2 * c3),
+    gate('ry', [1], 2 * c1 - Math.PI / 2),
     ...cx(),
-    gate('ry', [1], 2 * c2 - Math.PI / 2),
+    gate('ry', [1], Math.PI / 2 - 2 * c2),
     ...reversed,
   ];
 }
