@@ -1,0 +1,225 @@
+/**
+ * The command line: reads words, runs one command, writes its answer.
+ *
+ * Exit codes: 0 yes, 1 no, 2 bad input or usage, 3 undecided within the limits, 70 a fault of ours, 130 stopped by Ctrl-C.
+ */
+import { Command, CommanderError, Option } from 'commander';
+import pc from 'picocolors';
+import type { CommandRequest, CommandResult } from '../commands.ts';
+import { formatProblem, InputError, nearestWord } from '../input-error.ts';
+import { reportHtml } from '../write/report-html.ts';
+import { checkWritable, sourceOf, writeWhole } from './files.ts';
+import {
+  commonOptions,
+  defaultWorkers,
+  linksFrom,
+  ruleFrom,
+  secondsFrom,
+  toleranceFrom,
+  WORKERS_MAX,
+  type Words,
+  wholeFrom,
+} from './options.ts';
+import { progressView } from './progress.ts';
+import { runToEnd } from './run.ts';
+import { showReport } from './show.ts';
+
+const VERSION = '0.1.0';
+
+function shared(command: Command): Command {
+  return command
+    .addOption(new Option('--inputs <rule>', 'what the circuit must accept').choices(['any', 'zero']))
+    .addOption(new Option('--outputs <rule>', 'what becomes of the outputs').choices(['kept', 'measured'])) // biome-ignore format: one option a line
+    .option('--input-of <wire=rule>', 'the rule of one input (any, zero); repeatable', ruleFrom(['any', 'zero'])) // biome-ignore format: one option a line
+    .option('--output-of <wire=rule>', 'the rule of one output (kept, measured, dropped); repeatable', ruleFrom(['kept', 'measured', 'dropped'])) // biome-ignore format: one option a line
+    .option('--native <list>', 'native gates, or a .mtx file as entangler (default: cx,rz,sx)')
+    .option('--device <file>', 'device description (JSON)')
+    .option('--links <list>', 'pairs of wires that may interact, as 0-1,1-2', linksFrom)
+    .option('--tolerance <D>', 'Hilbert-Schmidt distance that counts as equal (default: 1e-10)', toleranceFrom) // biome-ignore format: one option a line
+    .option('--nearest', 'take the unitary nearest to a matrix that is not one')
+    .option('--seed <n>', 'same seed, same bytes', wholeFrom(0, 2 ** 31 - 1), 1)
+    .option('--workers <n>', 'threads for the fits; 0: none', wholeFrom(0, WORKERS_MAX), defaultWorkers()) // biome-ignore format: one option a line
+    .option('--time-limit <seconds>', 'stop after this long, keep the best so far', secondsFrom)
+    .option('--report <file>', 'write the report (.json or .html)')
+    .option('--json', 'the report on standard output, and nothing else there')
+    .option('--quiet', 'no progress on standard error')
+    .option('--force', 'replace existing files');
+}
+
+function program(finish: (code: number) => void): Command {
+  const root = new Command('wiregauge')
+    .description(
+      'Measures how many wires a quantum circuit really needs, rewrites it to need fewer, and proves that nothing else changed.',
+    )
+    .version(VERSION)
+    .showSuggestionAfterError(true)
+    .exitOverride()
+    .configureOutput({ outputError: () => {} })
+    .addHelpText(
+      'after',
+      '\nA CIRCUIT is an OpenQASM file (2.0 or 3), a unitary in a .mtx file, or an expression such as "kron(h, id) * cx".\nExit codes: 0 yes, 1 no, 2 bad input, 3 undecided within the limits, 70 a fault of ours, 130 stopped.',
+    );
+  shared(root.command('survey').argument('<circuit>', 'circuit or unitary'))
+    .description('counts, reusable pairs, influence, and the width under each contract')
+    .addHelpText('after', '\nExample: wiregauge survey parity.qasm')
+    .action(async (circuit: string, words: Words) => {
+      finish(await perform(words, () => ({ command: 'survey', circuit: sourceOf(circuit), options: commonOptions(words) }))); // biome-ignore format: one request
+    });
+  shared(root.command('narrow').argument('<circuit>', 'circuit or unitary'))
+    .description('the main job: fewer wires, native gates, checked')
+    .option('--wires <n>', 'this many wires (default: the fewest)', wholeFrom(1, 10_000))
+    .option('--out <file>', 'write the narrower circuit (OpenQASM 3)')
+    .addHelpText('after', '\nExample: wiregauge narrow block.qasm --out narrow.qasm')
+    .action(async (circuit: string, words: Words) => {
+      const { wires } = words;
+      finish(
+        await perform(words, () => ({
+          command: 'narrow',
+          circuit: sourceOf(circuit),
+          options: { ...commonOptions(words), ...(wires === undefined ? {} : { wires }) },
+        })),
+      );
+    });
+  shared(
+    root
+      .command('compare')
+      .argument('<original>', 'circuit or unitary')
+      .argument('<rewritten>', 'circuit or unitary'),
+  )
+    .description('same or not, how far apart, and an input that shows it')
+    .option('--relabel', 'allow a permutation of the outputs')
+    .addHelpText('after', '\nExample: wiregauge compare before.qasm after.qasm')
+    .action(async (original: string, rewritten: string, words: Words) => {
+      finish(
+        await perform(words, () => ({
+          command: 'compare',
+          original: sourceOf(original),
+          rewritten: sourceOf(rewritten),
+          options: { ...commonOptions(words), ...(words.relabel ? { relabel: true } : {}) },
+        })),
+      );
+    });
+  shared(root.command('build').argument('<target>', 'unitary (.mtx or expression) or circuit'))
+    .description('native gates for a unitary, with few entanglers')
+    .option('--entanglers <n>', 'at most this many; the best fit', wholeFrom(0, 100_000))
+    .addOption(new Option('--optimiser <name>', 'how to fit').choices(['lm', 'bfgs', 'nelder-mead'])) // biome-ignore format: one option a line
+    .option('--out <file>', 'write the circuit (OpenQASM 3)')
+    .addHelpText('after', '\nExample: wiregauge build "kron(h, id) * cx" --native cz,rz,sx')
+    .action(async (target: string, words: Words) => {
+      const { entanglers, optimiser } = words;
+      finish(
+        await perform(words, () => ({
+          command: 'build',
+          target: sourceOf(target),
+          options: {
+            ...commonOptions(words),
+            ...(entanglers === undefined ? {} : { entanglersMax: entanglers }),
+            ...(optimiser ? { optimiser } : {}),
+          },
+        })),
+      );
+    });
+  for (const command of root.commands) {
+    command.exitOverride().configureOutput({ outputError: () => {} });
+    command.showSuggestionAfterError(true);
+  }
+  return root;
+}
+
+async function perform(words: Words, request: () => CommandRequest): Promise<number> {
+  const started = performance.now();
+  for (const file of [words.out, words.report]) if (file) checkWritable(file, words.force === true);
+  if (words.report && !/\.(json|html)$/.test(words.report)) {
+    throw new InputError({ code: 'bad-report', message: `expected a .json or .html file for --report, got ${words.report}` }); // biome-ignore format: one message
+  }
+  const asked = request();
+  const view = progressView(words.quiet === true);
+  const { result, isInterrupted, isTimedOut } = await runToEnd(asked, {
+    workers: words.workers,
+    ...(words.timeLimit === undefined ? {} : { timeLimitSeconds: words.timeLimit }),
+    onProgress: (progress) => view.show(progress),
+  }).finally(() => view.end());
+  if (!result) {
+    const why = isTimedOut ? 'stopped at the time limit' : 'stopped';
+    process.stderr.write(`wiregauge: ${why} before there was a result to keep\n`);
+    return isInterrupted ? 130 : 3;
+  }
+  result.report.seconds = Math.round(performance.now() - started) / 1000;
+  deliver(result, words, asked.command);
+  if (isInterrupted) return 130;
+  return isTimedOut && result.exitCode !== 0 ? 3 : result.exitCode;
+}
+
+function deliver({ report, text, warnings }: CommandResult, words: Words, command: string): void {
+  for (const warning of warnings) {
+    process.stderr.write(`${pc.yellow('warning')}: ${formatProblem(warning)}\n`);
+  }
+  if (words.out && text !== null) {
+    writeWhole(words.out, text);
+    if ('files' in report) report.files.push(words.out);
+  }
+  const json = `${JSON.stringify(report, null, 2)}\n`;
+  if (words.report) {
+    const isHtml = words.report.endsWith('.html');
+    const summary = 'reason' in report ? report.reason : 'verdict' in report ? report.verdict : 'survey'; // biome-ignore format: one choice
+    writeWhole(words.report, isHtml ? reportHtml(report, { title: `wiregauge ${command}`, summary }) : json); // biome-ignore format: one call
+  }
+  if (words.json) {
+    process.stdout.write(json);
+    return;
+  }
+  process.stdout.write(showReport(report));
+  if (words.out && text !== null) process.stdout.write(`written: ${words.out}\n`);
+  else if (text !== null && command !== 'survey') process.stdout.write(`\n${text}`);
+}
+
+/** One message on standard error, and the exit code that goes with it. */
+function explain(error: unknown): number {
+  if (error instanceof CommanderError) {
+    if (error.exitCode === 0) return 0;
+    // commander prints help itself when no command is given
+    if (error.code === 'commander.help') return 2;
+    process.stderr.write(`wiregauge: ${error.message.replace(/^error: /, '')}\n`);
+    return 2;
+  }
+  if (error instanceof InputError) {
+    for (const problem of error.problems) {
+      process.stderr.write(`${pc.red('error')}: ${formatProblem(problem)}\n`);
+    }
+    return 2;
+  }
+  const message = error instanceof Error ? error.message : String(error);
+  process.stderr.write(`wiregauge: a fault of ours: ${message}\n`);
+  if (process.env.WIREGAUGE_TRACE && error instanceof Error)
+    process.stderr.write(`${error.stack}\n`);
+  return 70;
+}
+
+export async function main(argv: readonly string[]): Promise<number> {
+  let code = 0;
+  const root = program((found) => {
+    code = found;
+  });
+  try {
+    const [first] = argv;
+    const names = root.commands.map((command) => command.name());
+    if (
+      first !== undefined &&
+      !first.startsWith('-') &&
+      first !== 'help' &&
+      !names.includes(first)
+    ) {
+      const near = nearestWord(first, names);
+      throw new InputError({
+        code: 'unknown-command',
+        message: `unknown command: ${first}`,
+        hint: near ? `did you mean ${near}?` : `known: ${names.join(', ')}`,
+      });
+    }
+    await root.parseAsync([...argv], { from: 'user' });
+    return code;
+  } catch (error) {
+    // the edge: every error becomes one message and a code
+    return explain(error);
+  }
+}

@@ -1,0 +1,4 @@
+/** The kinds of jobs and the functions behind them: the same table in-process, in threads and in the browser. */
+import { fitBlock } from './reshape/fit-block.ts';
+
+export const jobTable = Object.freeze({ fit: fitBlock });
