@@ -7,8 +7,10 @@
  */
 import { assert } from '../assert.ts';
 import { type GateOperation, gate, unitaryGate } from '../circuit/circuit.ts';
-import { gateMatrix } from '../circuit/unitary.ts';
+import { applyGateInto, gateMatrix } from '../circuit/unitary.ts';
+import { identity } from '../numeric/complex-matrix.ts';
 import { hilbertSchmidtDistance } from '../numeric/distance.ts';
+import { axisOn, isZ } from './axes.ts';
 
 /** Largest gate whose own operands can be restricted; controls added by `ctrl @` can always. */
 export const RESTRICT_WIRES_MAX = 7;
@@ -62,29 +64,56 @@ export function restrictGate(
   return named ?? { ...kept(operation), ...diagonalOr(block, rest, `${operation.name}_part`) };
 }
 
-/** A gate for a matrix; with a body of Rz and Rzz where it is diagonal, so that it can be written. */
+/**
+ * A gate for a matrix on the given wires. One wire: Rz where it is diagonal. Two wires with an axis on each: with a
+ * body (turn the axes to z, Rz, Rz and Rzz, turn back), so that it can be written.
+ */
 function diagonalOr(block: Float64Array, wires: number[], label: string): GateOperation {
-  const d = 2 ** wires.length;
-  const phases: number[] = [];
-  let rest = 0;
-  for (let i = 0; i < d; i++) {
-    for (let j = 0; j < d; j++) {
-      const [re, im] = [block[i * d + j]!, block[d * d + i * d + j]!];
-      if (i === j) phases.push(Math.atan2(im, re));
-      else rest += re * re + im * im;
-    }
-  }
   const plain = unitaryGate(block, wires, label);
-  if (rest > SAME_GATE || wires.length > 2) return plain;
+  if (wires.length === 1) {
+    const phases = diagonalPhases(block, 2);
+    return phases ? gate('rz', wires, phases[1]! - phases[0]!) : plain;
+  }
+  if (wires.length > 2) return plain;
+  const turn: GateOperation[] = [];
+  const back: GateOperation[] = [];
+  for (const wire of [0, 1]) {
+    const axis = axisOn(block, 2, wire);
+    if (axis === 'none') return plain;
+    if (axis === 'all' || isZ(axis)) continue;
+    const [t, f] = [Math.acos(Math.max(-1, Math.min(1, axis[2]))), Math.atan2(axis[1], axis[0])];
+    turn.push(gate('rz', [wire], -f), gate('ry', [wire], -t));
+    back.push(gate('ry', [wire], t), gate('rz', [wire], f));
+  }
+  const turned = identity(4);
+  for (const part of [...back, unitaryGate(block, [0, 1]), ...turn]) {
+    applyGateInto(turned, part, 2, 4);
+  }
+  const phases = diagonalPhases(turned, 4);
+  if (!phases) return plain;
   const [p = 0, q = 0, r = 0, s = 0] = phases;
-  if (wires.length === 1) return gate('rz', wires, q - p);
   // phase of |st>, s and t = 1 or -1: -(a s + b t + c s t) / 2 up to a common one
-  const operations = [
+  const middle = [
     gate('rz', [0], (r + s - p - q) / 2),
     gate('rz', [1], (q + s - p - r) / 2),
     gate('rzz', [0, 1], (q + r - p - s) / 2),
   ];
+  const operations = [...turn, ...middle, ...back];
   return { ...plain, definition: { operations, phase: (p + q + r + s) / 4 } };
+}
+
+/** The phases of a diagonal d x d matrix; null when it is not diagonal. */
+function diagonalPhases(u: Float64Array, d: number): number[] | null {
+  const phases: number[] = [];
+  let rest = 0;
+  for (let i = 0; i < d; i++) {
+    for (let j = 0; j < d; j++) {
+      const [re, im] = [u[i * d + j]!, u[d * d + i * d + j]!];
+      if (i === j) phases.push(Math.atan2(im, re));
+      else rest += re * re + im * im;
+    }
+  }
+  return rest < SAME_GATE ? phases : null;
 }
 
 /** Condition and position stay with what remains. */

@@ -1,6 +1,6 @@
 import { describe, expect, test } from 'vitest';
 import { type GateOperation, gate, unitaryGate } from '../../src/circuit/circuit.ts';
-import { gateTable } from '../../src/circuit/gates.ts';
+import { gateTable, PAULI } from '../../src/circuit/gates.ts';
 import { applyGateInto, gateMatrix } from '../../src/circuit/unitary.ts';
 import { identity, kron } from '../../src/numeric/complex-matrix.ts';
 import { hilbertSchmidtDistance } from '../../src/numeric/distance.ts';
@@ -57,6 +57,28 @@ operations.push(
     matrix[64 + 9 * k] = Math.sin(t);
   }
   operations.push(unitaryGate(matrix, [0, 1, 2], 'diagonal'));
+}
+
+// exp(-i t/2 Z P Q) for other axes, and a turned one: bodies that turn the axes
+for (const paulis of [
+  [PAULI.X, PAULI.X],
+  [PAULI.Y, PAULI.X],
+  [PAULI.Z, PAULI.Y],
+]) {
+  const word = kron(PAULI.Z, kron(paulis[0]!, paulis[1]!, 2, 2), 2, 4);
+  const [c, s] = [Math.cos(0.4), Math.sin(0.4)];
+  const matrix = new Float64Array(128);
+  for (let k = 0; k < 64; k++) {
+    matrix[k] = s * word[64 + k]! + (k % 9 === 0 ? c : 0);
+    matrix[64 + k] = -s * word[k]!;
+  }
+  operations.push(unitaryGate(matrix, [0, 1, 2], 'rotation'));
+  const v = haarUnitary(2, draw);
+  const turned = identity(8);
+  applyGateInto(turned, { ...unitaryGate(v, [1]), power: -1 }, 3, 8);
+  applyGateInto(turned, unitaryGate(matrix, [0, 1, 2]), 3, 8);
+  applyGateInto(turned, unitaryGate(v, [1]), 3, 8);
+  operations.push(unitaryGate(turned, [0, 1, 2], 'turned rotation'));
 }
 
 describe('restricting a gate to a known value', () => {
