@@ -18,7 +18,12 @@ import { InputError } from './input-error.ts';
 import type { RunJobs } from './jobs.ts';
 import { type NativeSet, nativeSetOf } from './native/native-set.ts';
 import { toNative } from './native/to-native.ts';
-import { assembleWires, bitOfOutput, type NarrowedCircuit } from './plan/assemble.ts';
+import {
+  assembleWires,
+  bitOfOutput,
+  type NarrowedCircuit,
+  type WireEvent,
+} from './plan/assemble.ts';
 import { readCircuit } from './read/openqasm.ts';
 import type { CompareReport, FitRow, NarrowReport } from './reports.ts';
 import { reshape } from './reshape/reshape.ts';
@@ -83,7 +88,7 @@ export async function narrow(original: Circuit, options: NarrowOptions): Promise
   const road = chooseRoad({ ...wish, stopped: control.stopped });
   if (road.kind === 'impossible' || road.kind === 'undecided') return answer(job, road, null);
   const rewriting = await rewrite(job, road);
-  if (!rewriting) return answer(job, tooManyVariants(road), null);
+  if (typeof rewriting === 'string') return answer(job, closedAfterAll(road, rewriting), null);
   const { narrowed, fits } = rewriting;
   control.report({ stage: 'checking the written text' });
   const text = writeCircuit(narrowed.circuit);
@@ -115,11 +120,11 @@ function settle(original: Circuit, options: NarrowOptions): Job {
   };
 }
 
-/** The narrower circuit of a road that leads somewhere; null when a road turns out to be closed. */
+/** The narrower circuit of a road that leads somewhere, or why the road turned out to be closed. */
 async function rewrite(
   { original, contract, native, options, seed, control }: Job,
   road: Road & { kind: 'structure' | 'chain' | 'feed-forward' },
-): Promise<{ narrowed: NarrowedCircuit; fits: FitRow[] } | null> {
+): Promise<{ narrowed: NarrowedCircuit; fits: FitRow[] } | string> {
   if (road.kind === 'structure') {
     const { narrowed } = road;
     return {
@@ -130,7 +135,12 @@ async function rewrite(
   const { runJobs } = options;
   const fit = { entangler: native.entangler, seed, goal: FIT_GOAL, runJobs, control };
   const reshaped = await reshape(road, (output) => bitOfOutput(original, contract, output), fit);
-  if (!reshaped) return null;
+  if (!reshaped) return 'but its blocks would depend on too many bits at once';
+  if (reshaped.events.some(isUnfitted)) {
+    return control.stopped()
+      ? 'but it was stopped before its blocks were fitted'
+      : 'but the fit of a block did not reach it; another seed may';
+  }
   const narrowed = assembleWires(reshaped.events, original, contract);
   return { narrowed: inNativeGates(narrowed, contract, native), fits: reshaped.fits };
 }
@@ -163,9 +173,18 @@ function keptOutput({ annotations }: Operation, contract: Contract): boolean {
   });
 }
 
-function tooManyVariants(road: Road): Road & { kind: 'undecided' } {
-  const reason = `${road.reason}, but its blocks would depend on too many bits at once`;
-  return { kind: 'undecided', reason, bracket: null };
+/** A block of three wires or more that is still a matrix: no exact network is known for it. */
+function isUnfitted(event: WireEvent): boolean {
+  return (
+    event.kind === 'operation' &&
+    event.operation.kind === 'gate' &&
+    event.operation.matrix !== undefined &&
+    event.operation.wires.length > 2
+  );
+}
+
+function closedAfterAll(road: Road, why: string): Road & { kind: 'undecided' } {
+  return { kind: 'undecided', reason: `${road.reason}, ${why}`, bracket: null };
 }
 
 function answer(job: Job, road: Road, done: Rewritten | null): Narrowed {
