@@ -98,6 +98,11 @@ export function applyMatrixInto(
   mask = 0,
   value = 0,
 ): Float64Array {
+  const inner = withoutFirstControl(matrix, wires.length);
+  if (inner) {
+    const stride = 2 ** (n - 1 - wires[0]!);
+    return applyMatrixInto(data, inner, wires.slice(1), n, columns, mask + stride, value + stride);
+  }
   const k = wires.length;
   const size = 2 ** k;
   const rows = 2 ** n;
@@ -148,6 +153,32 @@ export function applyMatrixInto(
   return data;
 }
 
+/** The lower right block of a matrix whose first wire is a mere control; undefined for all others. */
+function withoutFirstControl(matrix: Float64Array, k: number): Float64Array | undefined {
+  if (k < 2) return undefined;
+  const size = 2 ** k;
+  const half = size / 2;
+  for (let r = 0; r < half; r++) {
+    for (let s = 0; s < size; s++) {
+      const wanted = r === s ? 1 : 0;
+      if (matrix[r * size + s] !== wanted || matrix[size * size + r * size + s] !== 0)
+        return undefined;
+      if (s >= half) continue;
+      const below = (half + r) * size + s;
+      if (matrix[below] !== 0 || matrix[size * size + below] !== 0) return undefined;
+    }
+  }
+  const out = new Float64Array(2 * half * half);
+  for (let r = 0; r < half; r++) {
+    for (let s = 0; s < half; s++) {
+      const from = (half + r) * size + half + s;
+      out[r * half + s] = matrix[from]!;
+      out[half * half + r * half + s] = matrix[size * size + from]!;
+    }
+  }
+  return out;
+}
+
 function applyOneWire(
   data: Float64Array,
   m: Float64Array,
@@ -161,26 +192,44 @@ function applyOneWire(
   const [ar, br, cr, dr, ai, bi, ci, di] = m as unknown as number[] as [
     number, number, number, number, number, number, number, number,
   ]; // biome-ignore format: eight entries of one matrix
-  const diagonal = br === 0 && bi === 0 && cr === 0 && ci === 0;
-  const upperIsOne = diagonal && ar === 1 && ai === 0;
-  for (let row = 0; row < rows; row++) {
+  const isDiagonal = br === 0 && bi === 0 && cr === 0 && ci === 0;
+  const isFlip = ar === 0 && ai === 0 && dr === 0 && di === 0 && br === 1 && bi === 0 && cr === 1 && ci === 0; // biome-ignore format: one condition
+  const upperIsOne = isDiagonal && ar === 1 && ai === 0;
+  // rows that differ only below the lowest bit of wire and controls lie together: one run
+  const lowest = mask === 0 ? stride : Math.min(stride, mask & -mask);
+  const run = lowest * columns;
+  const other = stride * columns;
+  for (let row = 0; row < rows; row += lowest) {
     if ((row & stride) !== 0 || (row & mask) !== value) continue;
-    const p = row * columns;
-    const q = (row + stride) * columns;
-    if (diagonal) {
-      if (!upperIsOne) scaleRow(data, p, im, columns, ar, ai);
-      scaleRow(data, q, im, columns, dr, di);
+    const start = row * columns;
+    if (isDiagonal) {
+      if (!upperIsOne) scaleRow(data, start, im, run, ar, ai);
+      scaleRow(data, start + other, im, run, dr, di);
       continue;
     }
-    for (let c = 0; c < columns; c++) {
-      const xr = data[p + c]!;
-      const xi = data[im + p + c]!;
-      const yr = data[q + c]!;
-      const yi = data[im + q + c]!;
-      data[p + c] = ar * xr - ai * xi + br * yr - bi * yi;
-      data[im + p + c] = ar * xi + ai * xr + br * yi + bi * yr;
-      data[q + c] = cr * xr - ci * xi + dr * yr - di * yi;
-      data[im + q + c] = cr * xi + ci * xr + dr * yi + di * yr;
+    const end = start + run;
+    if (isFlip) {
+      for (let p = start; p < end; p++) {
+        const q = p + other;
+        const x = data[p]!;
+        const y = data[im + p]!;
+        data[p] = data[q]!;
+        data[im + p] = data[im + q]!;
+        data[q] = x;
+        data[im + q] = y;
+      }
+      continue;
+    }
+    for (let p = start; p < end; p++) {
+      const q = p + other;
+      const xr = data[p]!;
+      const xi = data[im + p]!;
+      const yr = data[q]!;
+      const yi = data[im + q]!;
+      data[p] = ar * xr - ai * xi + br * yr - bi * yi;
+      data[im + p] = ar * xi + ai * xr + br * yi + bi * yr;
+      data[q] = cr * xr - ci * xi + dr * yr - di * yi;
+      data[im + q] = cr * xi + ci * xr + dr * yi + di * yr;
     }
   }
   return data;

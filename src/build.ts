@@ -1,0 +1,147 @@
+/**
+ * Makes native gates for a block: a unitary, or, where inputs start in |0>, only the columns that count.
+ *
+ * One wire: Euler angles. Two wires: the canonical decomposition, with the fewest uses of the entangler where its class is
+ * known (`native/two-wire.ts`), else a fit at rising counts. Three wires and more: fits at rising counts from the bound by
+ * dimension for generic targets, or from few entanglers for special ones (`native/synthesise.ts`).
+ * The distance in the report is computed anew from the gates that are returned.
+ */
+import { type Circuit, emptyCircuit, type GateOperation } from './circuit/circuit.ts';
+import { contractOf } from './circuit/contract.ts';
+import { countCircuit } from './circuit/counts.ts';
+import { applyGateInto, circuitUnitary } from './circuit/unitary.ts';
+import { type ContractOptions, contractName } from './contract.ts';
+import { type Control, freeRunning } from './control.ts';
+import { InputError } from './input-error.ts';
+import type { RunJobs } from './jobs.ts';
+import { type CustomEntangler, nativeSetOf } from './native/native-set.ts';
+import { synthesise, type Wanted, wantedDistance } from './native/synthesise.ts';
+import { toNative } from './native/to-native.ts';
+import { distanceAngle, processInfidelity } from './numeric/distance.ts';
+import type { BuildReport } from './reports.ts';
+
+export type BuildOptions = ContractOptions & {
+  native?: string;
+  custom?: readonly CustomEntangler[];
+  /** Pairs of wires that may interact; all of them unless given. */
+  links?: readonly (readonly [number, number])[];
+  /** At most this many entanglers; the best fit. */
+  entanglers?: number;
+  optimiser?: 'lm' | 'bfgs' | 'nelder-mead';
+  tolerance?: number;
+  seed?: number;
+  runJobs: RunJobs;
+  control?: Control;
+};
+
+export const BUILD_WIRES_MAX = 5;
+
+export async function buildTarget(
+  target: Circuit,
+  options: BuildOptions,
+): Promise<{ report: BuildReport; circuit: Circuit }> {
+  const { native = 'cx,rz,sx', tolerance = 1e-10, seed = 1, control = freeRunning } = options;
+  const set = nativeSetOf(native, options.custom);
+  const contract = contractOf(target, options);
+  const wanted = wantedOf(target, contract.inputs);
+  const links = checkedLinks(options.links, target.wires);
+  const found = await synthesise(wanted, {
+    entangler: set.entangler,
+    links,
+    ...(options.entanglers === undefined ? {} : { entanglersMax: options.entanglers }),
+    tolerance,
+    seed,
+    optimiser: options.optimiser ?? 'lm',
+    runJobs: options.runJobs,
+    control,
+  });
+  const isFixed = found.operations.every((operation) => operation.wires.length <= 2);
+  const operations = isFixed ? toNative(found.operations, target.wires, set) : found.operations;
+  const circuit: Circuit = { ...emptyCircuit(target.wires, 0, target.name), operations };
+  const made = columnsOf(operations as readonly GateOperation[], wanted);
+  const hilbertSchmidt = wantedDistance(wanted, made);
+  const isBuilt = hilbertSchmidt <= tolerance;
+  return {
+    circuit,
+    report: {
+      schema: 'wiregauge/build@1',
+      seed,
+      contract: contractName(contract),
+      contractFromFile: contract.decidedBy === 'file',
+      seconds: 0,
+      notes: [...found.notes],
+      target: target.name,
+      verdict: isBuilt ? 'built' : found.isStopped ? 'undecided' : 'approximate',
+      counts: countCircuit(circuit),
+      distance: {
+        hilbertSchmidt,
+        processInfidelity: processInfidelity(hilbertSchmidt),
+        worstCase: null,
+        angle: distanceAngle(hilbertSchmidt),
+      },
+      entanglers: {
+        used: countCircuit(circuit).twoQubit,
+        bound: found.bound,
+        boundKind: found.boundKind,
+      },
+      frontier: found.frontier,
+      fits: found.fits,
+      native: set.text,
+      files: [],
+    },
+  };
+}
+
+function wantedOf(target: Circuit, inputs: readonly ('any' | 'zero')[]): Wanted {
+  if (target.wires > BUILD_WIRES_MAX) {
+    throw new InputError({
+      code: 'too-large',
+      message: `number of wires must be at most ${BUILD_WIRES_MAX} for build, got ${target.wires}`,
+      file: target.name,
+    });
+  }
+  const n = target.wires;
+  const d = 2 ** n;
+  const matrix = circuitUnitary(target);
+  const zeroMask = inputs.reduce(
+    (mask, rule, k) => mask + (rule === 'zero' ? 2 ** (n - 1 - k) : 0),
+    0,
+  );
+  const columns: number[] = [];
+  for (let k = 0; k < d; k++) if ((k & zeroMask) === 0) columns.push(k);
+  return { wires: n, matrix, columns };
+}
+
+function columnsOf(operations: readonly GateOperation[], { wires, columns }: Wanted): Float64Array {
+  const d = 2 ** wires;
+  const c = columns.length;
+  const out = new Float64Array(2 * d * c);
+  columns.forEach((column, k) => {
+    out[column * c + k] = 1;
+  });
+  for (const operation of operations) applyGateInto(out, operation, wires, c);
+  return out;
+}
+
+function checkedLinks(
+  links: BuildOptions['links'],
+  wires: number,
+): readonly (readonly [number, number])[] {
+  const all: [number, number][] = [];
+  for (let a = 0; a < wires; a++) for (let b = a + 1; b < wires; b++) all.push([a, b]);
+  const given = links?.filter(([a, b]) => a < wires && b < wires) ?? all;
+  const reached = new Set([0]);
+  for (let round = 0; round < wires; round++) {
+    for (const [a, b] of given) {
+      if (reached.has(a)) reached.add(b);
+      else if (reached.has(b)) reached.add(a);
+    }
+  }
+  if (reached.size < wires) {
+    throw new InputError({
+      code: 'not-connected',
+      message: `expected links that connect all ${wires} wires, got ${given.map((pair) => pair.join('-')).join() || 'none'}`,
+    });
+  }
+  return given;
+}
