@@ -1,0 +1,22 @@
+OPENQASM 3;
+include "stdgates.inc";
+// Three stations exchange news in a ring until everyone knows of everyone: nothing can leave early.
+qubit[3] station;
+ry(0.7) station[0];
+ry(1.3) station[1];
+ry(0.4) station[2];
+cx station[0], station[1];
+rz(0.9) station[1];
+cx station[1], station[2];
+rx(0.5) station[2];
+cx station[2], station[0];
+ry(1.2) station[0];
+cx station[0], station[1];
+rx(0.8) station[1];
+cx station[1], station[2];
+ry(0.6) station[2];
+cx station[2], station[0];
+rz(1.4) station[0];
+ry(0.3) station[0];
+cx station[0], station[1];
+rx(1.1) station[1];

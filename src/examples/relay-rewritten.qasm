@@ -1,0 +1,23 @@
+OPENQASM 3;
+include "stdgates.inc";
+// The same relay by hand, in CX and single-wire gates.
+qubit[3] station;
+h station[0];
+cx station[1], station[0];
+t station[0];
+cx station[1], station[0];
+h station[2];
+cx station[1], station[2];
+tdg station[2];
+cx station[0], station[2];
+t station[2];
+cx station[1], station[2];
+tdg station[2];
+cx station[0], station[2];
+t station[1];
+t station[2];
+h station[2];
+cx station[0], station[1];
+t station[0];
+tdg station[1];
+cx station[0], station[1];
