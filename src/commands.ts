@@ -174,7 +174,8 @@ function deviceOf({ text, name }: Source): Device {
   return readDevice(text, name);
 }
 
-async function readSource(
+/** Reads a circuit, or a unitary as a circuit of one gate; adds to `warnings` and `notes`. */
+export async function readSource(
   { name, text, isExpression }: Source,
   nearest: boolean,
   warnings: InputProblem[],
