@@ -15,6 +15,8 @@ import type { Template } from './template.ts';
 const GENERIC_DISTANCE = 0.02;
 /** Up to this bound every number is tried, from zero. */
 const TRY_ALL_MAX = 4;
+/** Above this bound a fit gets two starts a number at most. */
+const LARGE_BOUND = 30;
 const PROBE_ITERATIONS = 30;
 const ITERATIONS_MAX = 400;
 /** How many more than the bound are tried before giving up. */
@@ -37,8 +39,10 @@ export type Search = {
   control: Control;
 };
 
-export async function fewestEntanglers(search: Search): Promise<Found | null> {
-  const { bound, goal, control } = search;
+export async function fewestEntanglers(given: Search): Promise<Found | null> {
+  const { bound, goal, control } = given;
+  // a large fit is slow, and one spare entangler helps it more than another start
+  const search = bound > LARGE_BOUND ? { ...given, attempts: Math.min(2, given.attempts) } : given;
   const works = (found: Found | null): found is Found => found !== null && found.distance <= goal;
   if (bound <= TRY_ALL_MAX) {
     for (let count = 0; count <= bound + 2 && !control.stopped(); count++) {
