@@ -18,17 +18,23 @@ import type { RunJobs } from '../jobs.ts';
 import { hilbertSchmidtDistance } from '../numeric/distance.ts';
 import { random } from '../numeric/random.ts';
 import type { FitRow } from '../reports.ts';
-import type { FitJob, FitResult, FitTarget } from '../reshape/fit-block.ts';
+import type { FitJob, FitTarget } from '../reshape/fit-block.ts';
 import {
-  angleCount,
+  beamOfPlacements,
+  descend,
+  type FitSettings,
+  fitPlacements,
+  type Pair,
+  type Placement,
+  structuredDistance,
+} from '../reshape/placement-beam.ts';
+import {
   type Entangler,
   entanglerTemplate,
   type Template,
   templateOperations,
 } from '../reshape/template.ts';
 import { entanglerUse, twoWireGates, usesNeeded } from './two-wire.ts';
-
-export type Pair = readonly [number, number];
 
 /** A block: its whole unitary (planar), and which input basis states count. */
 export type Wanted = { wires: number; matrix: Float64Array; columns: readonly number[] };
@@ -56,12 +62,7 @@ export type Synthesis = {
 
 /** Special targets are searched for up to this many entanglers before the generic count is taken. */
 const SEARCH_MAX = 11;
-const BEAM = 12;
-const ITERATIONS_MAX = 400;
 const GENERIC_STARTS = 12;
-/** D of a fit that counts as exact: far below any tolerance, above rounding. */
-const GOAL = 1e-24;
-
 /** D between the wanted columns and those made (2^n x columns, planar). */
 export function wantedDistance(wanted: Wanted, made: Float64Array): number {
   const target = wantedColumns(wanted);
@@ -123,11 +124,9 @@ function exact(operations: GateOperation[], bound: number): Synthesis {
   };
 }
 
-type Candidate = { pairs: Pair[]; angles: Float64Array; distance: number; iterations: number; status: string }; // biome-ignore format: one line
-
-/** One search: its candidates, and the best per count for the frontier. */
+/** One search: its settings, and the nearest placement per count for the frontier. */
 class Search {
-  private readonly frontier = new Map<number, Candidate>();
+  private readonly frontier = new Map<number, Placement>();
   private readonly target: FitTarget;
   private readonly order: number[];
   private readonly wanted: Wanted;
@@ -157,13 +156,13 @@ class Search {
   async run(): Promise<Synthesis> {
     const { entanglersMax = Number.POSITIVE_INFINITY } = this.options;
     const isSmall = this.generic <= 5;
-    const isSpecial = isSmall || (await this.looksSpecial());
-    if (isSpecial) {
-      const found = await this.beam(
-        Math.min(entanglersMax, isSmall ? this.generic + 4 : SEARCH_MAX),
-      );
+    const isSpecial = isSmall || this.looksSpecial();
+    if (isSpecial || this.wanted.wires === 3) {
+      const most = Math.min(entanglersMax, isSmall ? this.generic + 4 : SEARCH_MAX);
+      const found = await this.beam(most, isSpecial ? undefined : structuredDistance);
       if (found) return this.answer(found);
-    } else this.isExhausted = false;
+    }
+    this.isExhausted = false;
     if (entanglersMax < this.generic) {
       await this.placements(entanglersMax, GENERIC_STARTS);
       return this.answer(null);
@@ -177,7 +176,7 @@ class Search {
   }
 
   /** Few distinct sizes among the entries: gates and Fourier transforms have it, generic unitaries do not. */
-  private async looksSpecial(): Promise<boolean> {
+  private looksSpecial(): boolean {
     const { matrix } = this.wanted;
     const half = matrix.length / 2;
     const sizes = new Set<number>();
@@ -187,45 +186,37 @@ class Search {
     return sizes.size <= half / 4;
   }
 
-  /** Rising counts, each extending the nearest placements of the one before. */
-  private async beam(countMax: number): Promise<Candidate | null> {
-    const { links, control } = this.options;
-    let kept = await this.fitAll([{ pairs: [], start: null }], 0);
-    let best = this.note(kept);
-    if (best) return best;
-    for (let count = 1; count <= countMax; count++) {
-      if (control.stopped()) return null;
-      control.report({ stage: `placing ${count} entanglers` });
-      const seen = new Set<string>();
-      const next: { pairs: Pair[]; start: Float64Array | null }[] = [];
-      for (const { pairs, angles } of kept) {
-        for (const link of links) {
-          const longer = [...pairs, link];
-          const key = placementKey(longer);
-          if (seen.has(key) || isWasteful(longer)) continue;
-          seen.add(key);
-          next.push({ pairs: longer, start: angles });
-        }
-      }
-      // warm starts first, then one fresh start each
-      const warm = next.map(({ pairs, start }) => ({ pairs, start }));
-      const fresh = next.map(({ pairs }) => ({ pairs, start: null }));
-      kept = await this.fitAll([...warm, ...fresh], count);
-      best = this.note(kept);
-      if (best) return best;
-      const unique = new Map<string, Candidate>();
-      for (const candidate of kept) {
-        const key = placementKey(candidate.pairs);
-        if (!unique.has(key)) unique.set(key, candidate);
-      }
-      if (unique.size > BEAM) this.isExhausted = false;
-      kept = [...unique.values()].slice(0, BEAM);
-    }
-    return null;
+  private get fitting(): FitSettings {
+    const { tolerance, seed, optimiser, runJobs, control } = this.options;
+    return {
+      label: 'the block',
+      target: this.target,
+      templateOf: (pairs) => this.templateOf(pairs),
+      tolerance,
+      seed,
+      optimiser,
+      runJobs,
+      control,
+    };
+  }
+
+  private async beam(
+    countMax: number,
+    farAt?: (count: number) => number,
+  ): Promise<Placement | null> {
+    const { links } = this.options;
+    const limits = { links, countMax, ...(farAt ? { farAt } : {}) };
+    const found = await beamOfPlacements({ ...this.fitting, ...limits });
+    this.note(found.levels);
+    if (!found.best) return null;
+    const { best, isExhausted } = await descend(found.best, { ...this.fitting, ...limits });
+    this.isExhausted = isExhausted;
+    this.note([best]);
+    return best;
   }
 
   /** Cyclic and random placements with this many entanglers, from random starts. */
-  private async placements(count: number, starts: number): Promise<Candidate | null> {
+  private async placements(count: number, starts: number): Promise<Placement | null> {
     const { links, seed, control } = this.options;
     control.report({ stage: `fitting ${count} entanglers` });
     const list: { pairs: Pair[]; start: null }[] = [];
@@ -239,40 +230,10 @@ class Search {
       }
       list.push({ pairs, start: null });
     }
-    return this.note(await this.fitAll(list, count));
-  }
-
-  /** Fits a list of placements; results by distance, ties in list order. */
-  private async fitAll(
-    list: readonly { pairs: Pair[]; start: Float64Array | null }[],
-    count: number,
-  ): Promise<Candidate[]> {
-    const { seed, optimiser, runJobs, control } = this.options;
-    const templates = list.map(({ pairs }) => this.templateOf(pairs));
-    const jobs = list.map(({ start }, k): FitJob => {
-      const size = angleCount(templates[k]!);
-      const warm = start ? extended(start, size) : null;
-      return {
-        kind: 'fit',
-        id: `${count} entanglers/${k}`,
-        seed,
-        template: templates[k]!,
-        target: this.target,
-        ...(warm ? { start: warm, perturbation: 0.3 } : {}),
-        optimiser,
-        goal: GOAL,
-        iterationsMax: ITERATIONS_MAX,
-      };
-    });
-    const enough = (result: FitResult): boolean => result.distance <= this.options.tolerance;
-    const results = await runJobs<FitJob, FitResult>(jobs, { control, enough });
-    const found: Candidate[] = [];
-    results.forEach((result, k) => {
-      if (!result || !Number.isFinite(result.distance)) return;
-      const { angles, distance, iterations, status } = result;
-      found.push({ pairs: list[k]!.pairs, angles, distance, iterations, status });
-    });
-    return found.sort((a, b) => a.distance - b.distance);
+    const found = await fitPlacements(list, { ...this.fitting, label: 'the whole' });
+    this.note(found);
+    const [best] = found;
+    return best && best.distance <= this.options.tolerance ? best : null;
   }
 
   private templateOf(pairs: readonly Pair[]): Template {
@@ -283,16 +244,17 @@ class Search {
     return entanglerTemplate(this.wanted.wires, placed, this.options.entangler);
   }
 
-  /** Keeps the best for the frontier; the candidate itself when it is good enough. */
-  private note(found: readonly Candidate[]): Candidate | null {
-    const [best] = found;
-    if (!best) return null;
-    const before = this.frontier.get(best.pairs.length);
-    if (!before || best.distance < before.distance) this.frontier.set(best.pairs.length, best);
-    return best.distance <= this.options.tolerance ? best : null;
+  /** Keeps the nearest of every count for the frontier. */
+  private note(found: readonly Placement[]): void {
+    for (const placement of found) {
+      const before = this.frontier.get(placement.pairs.length);
+      if (!before || placement.distance < before.distance) {
+        this.frontier.set(placement.pairs.length, placement);
+      }
+    }
   }
 
-  private answer(found: Candidate | null): Synthesis {
+  private answer(found: Placement | null): Synthesis {
     const rows = [...this.frontier.entries()].sort(([a], [b]) => a - b);
     const best = found ?? rows.map(([, row]) => row).sort((a, b) => a.distance - b.distance)[0];
     if (!best) throw new Error(`internal: no fit was tried on ${this.wanted.wires} wires`);
@@ -326,33 +288,6 @@ class Search {
       isStopped: this.options.control.stopped(),
     };
   }
-}
-
-/** Angles for a longer template: those known, and zeros. */
-function extended(start: Float64Array, size: number): Float64Array {
-  const out = new Float64Array(size);
-  out.set(start.subarray(0, size));
-  return out;
-}
-
-/** Four in a row on one pair are three at most (any two-wire gate needs no more than three CX). */
-function isWasteful(pairs: readonly Pair[]): boolean {
-  const [a, b, c, d] = pairs.slice(-4);
-  const same = (p: Pair | undefined, q: Pair | undefined): boolean =>
-    p !== undefined && q !== undefined && p[0] === q[0] && p[1] === q[1];
-  return same(a, b) && same(b, c) && same(c, d);
-}
-
-/** Placements that differ only in the order of pairs without a common wire have one key. */
-function placementKey(pairs: readonly Pair[]): string {
-  const level = new Map<number, number>();
-  const placed = pairs.map(([a, b]) => {
-    const at = Math.max(level.get(a) ?? 0, level.get(b) ?? 0) + 1;
-    level.set(a, at);
-    level.set(b, at);
-    return `${String(at).padStart(3, '0')}:${a}-${b}`;
-  });
-  return placed.sort().join(' ');
 }
 
 /** Wires that start in |0> first, each group ascending; the place of a wire in it is its wire in the template. */

@@ -34,6 +34,7 @@ import {
 } from './chain-templates.ts';
 import { type Found, fewestEntanglers } from './fewest-entanglers.ts';
 import type { FitTarget } from './fit-block.ts';
+import { beamOfPlacements, type Pair, structuredDistance } from './placement-beam.ts';
 import { averageOver, widen } from './residual.ts';
 import {
   angleCount,
@@ -46,6 +47,10 @@ import {
 /** What is left of a chain is fitted at once when it has no more carriers and blocks than this. */
 const JOINT_WIRES_MAX = 4;
 const JOINT_BLOCKS_MAX = 3;
+
+/** Blocks are searched for structure up to this size and this many entanglers. */
+const SIMPLE_WIRES_MAX = 3;
+const SIMPLE_COUNT_MAX = 9;
 
 export type FitChainOptions = {
   entangler: Entangler;
@@ -69,8 +74,66 @@ export async function fitChain(
 ): Promise<ChainFit> {
   const target = onCarriers(u, chain);
   const blocks = chainBlocks(chain).filter((block) => !isIdle(block));
-  const { operations, fits } = await fitInTurn(blocks, options);
+  const { operations, fits } =
+    (await fitSimpleBlocks(blocks, options)) ?? (await fitInTurn(blocks, options));
   return { operations, fits, distance: distanceTo(target, operations, chain.wires) };
+}
+
+/**
+ * Blocks with structure of their own, each with far fewer entanglers than a generic block of its size; null as soon as one
+ * is not of this kind. The factorisation keeps simple blocks simple, so this is what circuits written by hand end in.
+ */
+async function fitSimpleBlocks(
+  blocks: readonly ChainBlock[],
+  { entangler, seed, goal, runJobs, control = freeRunning }: FitChainOptions,
+): Promise<{ operations: GateOperation[]; fits: FitRow[] } | null> {
+  const operations: GateOperation[] = [];
+  const fits: FitRow[] = [];
+  for (const [b, { wires, matrix }] of blocks.entries()) {
+    const k = wires.length;
+    if (k > SIMPLE_WIRES_MAX || control.stopped()) return null;
+    if (k <= 2) {
+      operations.push(unitaryGate(matrix, wires, 'block'));
+      continue;
+    }
+    const links = wires.flatMap((_, x) => wires.slice(x + 1).map((__, y): Pair => [x, x + 1 + y]));
+    const { best } = await beamOfPlacements({
+      label: `block ${b + 1}`,
+      target: { kind: 'unitary', matrix },
+      templateOf: (pairs) =>
+        entanglerTemplate(
+          k,
+          pairs.map(([x, y]): [number, number] => [x, y]),
+          entangler,
+        ),
+      tolerance: goal,
+      seed,
+      optimiser: 'lm',
+      runJobs,
+      control,
+      links,
+      countMax: SIMPLE_COUNT_MAX,
+      farAt: structuredDistance,
+    });
+    if (!best) return null;
+    const template = entanglerTemplate(
+      k,
+      best.pairs.map(([x, y]): [number, number] => [x, y]),
+      entangler,
+    );
+    const local = templateOperations(template, best.angles);
+    operations.push(...local.map((op) => ({ ...op, wires: op.wires.map((w) => wires[w]!) })));
+    const { pairs, iterations, distance, status } = best;
+    fits.push({
+      block: b,
+      wires: [...wires],
+      entanglers: pairs.length,
+      iterations,
+      distance,
+      status,
+    });
+  }
+  return { operations, fits };
 }
 
 function distanceTo(target: Float64Array, operations: readonly GateOperation[], n: number): number {
