@@ -6,7 +6,12 @@
  * dimension for generic targets, or from few entanglers for special ones (`native/synthesise.ts`).
  * The distance in the report is computed anew from the gates that are returned.
  */
-import { type Circuit, emptyCircuit, type GateOperation } from './circuit/circuit.ts';
+import {
+  type Circuit,
+  emptyCircuit,
+  type GateOperation,
+  type Operation,
+} from './circuit/circuit.ts';
 import { contractOf } from './circuit/contract.ts';
 import { countCircuit } from './circuit/counts.ts';
 import { applyGateInto, circuitUnitary } from './circuit/unitary.ts';
@@ -14,7 +19,7 @@ import { type ContractOptions, contractName } from './contract.ts';
 import { type Control, freeRunning } from './control.ts';
 import { InputError } from './input-error.ts';
 import type { RunJobs } from './jobs.ts';
-import { type CustomEntangler, nativeSetOf } from './native/native-set.ts';
+import { type CustomEntangler, type NativeSet, nativeSetOf } from './native/native-set.ts';
 import { synthesise, type Wanted, wantedDistance } from './native/synthesise.ts';
 import { toNative } from './native/to-native.ts';
 import { distanceAngle, processInfidelity } from './numeric/distance.ts';
@@ -43,9 +48,14 @@ export async function buildTarget(
   const { native = 'cx,rz,sx', tolerance = 1e-10, seed = 1, control = freeRunning } = options;
   const set = nativeSetOf(native, options.custom);
   const contract = contractOf(target, options);
-  const wanted = wantedOf(target, contract.inputs);
   const links = checkedLinks(options.links, target.wires);
+  if (target.wires > BUILD_WIRES_MAX && hasGates(target)) {
+    return converted(target, options, set, contractName(contract), contract.decidedBy === 'file');
+  }
+  const wanted = wantedOf(target, contract.inputs);
+  const hint = hintOf(target, links, set);
   const found = await synthesise(wanted, {
+    ...(hint ? { hint } : {}),
     entangler: set.entangler,
     links,
     ...(options.entanglers === undefined ? {} : { entanglersMax: options.entanglers }),
@@ -55,8 +65,17 @@ export async function buildTarget(
     runJobs: options.runJobs,
     control,
   });
-  const isFixed = found.operations.every((operation) => operation.wires.length <= 2);
-  const operations = isFixed ? toNative(found.operations, target.wires, set) : found.operations;
+  const synthesised = toNative(found.operations, target.wires, set);
+  const fewest = withoutMore(synthesised, target, links, set, options);
+  const operations = fewest ?? synthesised;
+  if (fewest) {
+    found.notes.push(
+      'the gates as written, joined and converted, need fewer entanglers than any fit found',
+    );
+    found.bound = 0;
+    found.boundKind = 'found';
+    found.fits = [];
+  }
   const circuit: Circuit = { ...emptyCircuit(target.wires, 0, target.name), operations };
   const made = columnsOf(operations as readonly GateOperation[], wanted);
   const hilbertSchmidt = wantedDistance(wanted, made);
@@ -86,6 +105,85 @@ export async function buildTarget(
       },
       frontier: found.frontier,
       fits: found.fits,
+      native: set.text,
+      files: [],
+    },
+  };
+}
+
+/** True for a circuit with gates of its own: not a bare unitary. */
+function hasGates(target: Circuit): boolean {
+  return target.operations.every(
+    (operation) =>
+      operation.kind === 'barrier' ||
+      (operation.kind === 'gate' && !operation.condition && operation.name !== 'unitary'),
+  );
+}
+
+/** Where the circuit as written has its entanglers, when it may have them there. */
+function hintOf(
+  target: Circuit,
+  links: readonly (readonly [number, number])[],
+  set: NativeSet,
+): (readonly [number, number])[] | null {
+  if (!hasGates(target)) return null;
+  const pairs = toNative(target.operations, target.wires, set).flatMap(
+    (operation): (readonly [number, number])[] =>
+      operation.kind === 'gate' && operation.wires.length === 2
+        ? [[operation.wires[0]!, operation.wires[1]!]]
+        : [],
+  );
+  const isLinked = pairs.every(([a, b]) =>
+    links.some(([p, q]) => (p === a && q === b) || (p === b && q === a)),
+  );
+  return isLinked ? pairs : null;
+}
+
+/** The circuit's own gates in the native set, when they need fewer entanglers than what was found; else null. */
+function withoutMore(
+  found: readonly Operation[],
+  target: Circuit,
+  links: readonly (readonly [number, number])[],
+  set: NativeSet,
+  { entanglers = Number.POSITIVE_INFINITY }: BuildOptions,
+): Operation[] | null {
+  const isComplete = links.length === (target.wires * (target.wires - 1)) / 2;
+  if (!hasGates(target) || !isComplete) return null;
+  const own = toNative(target.operations, target.wires, set);
+  const count = (list: readonly Operation[]): number =>
+    list.filter((operation) => operation.kind === 'gate' && operation.wires.length > 1).length;
+  return count(own) < count(found) && count(own) <= entanglers ? own : null;
+}
+
+/** Circuits too large for a synthesis of the whole: gates on one pair joined, and converted exactly. */
+function converted(
+  target: Circuit,
+  { seed = 1 }: BuildOptions,
+  set: NativeSet,
+  contract: string,
+  contractFromFile: boolean,
+): { report: BuildReport; circuit: Circuit } {
+  const operations = toNative(target.operations, target.wires, set);
+  const circuit: Circuit = { ...emptyCircuit(target.wires, 0, target.name), operations };
+  const counts = countCircuit(circuit);
+  return {
+    circuit,
+    report: {
+      schema: 'wiregauge/build@1',
+      seed,
+      contract,
+      contractFromFile,
+      seconds: 0,
+      notes: [
+        `more than ${BUILD_WIRES_MAX} wires: converted gate by gate, exactly; the distance is that of the rules, not measured`,
+      ],
+      target: target.name,
+      verdict: 'built',
+      counts,
+      distance: { hilbertSchmidt: 0, processInfidelity: 0, worstCase: null, angle: 0 },
+      entanglers: { used: counts.twoQubit, bound: 0, boundKind: 'found' },
+      frontier: [],
+      fits: [],
       native: set.text,
       files: [],
     },

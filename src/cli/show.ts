@@ -219,7 +219,7 @@ function showBuild(report: BuildReport): string {
   const { verdict, entanglers, counts, frontier } = report;
   const lines = [`${pc.bold(report.target)}: ${verdict} in ${report.native}`];
   lines.push(
-    `${entanglers.used} entanglers (${entanglers.boundKind}; at least ${entanglers.bound} are needed)`,
+    `${entanglers.used} entanglers (${entanglers.boundKind}${entanglers.bound > 0 ? `; at least ${entanglers.bound} are needed` : ''})`,
   );
   lines.push(...distanceLines(report.distance), '', countRows([['circuit', counts]]));
   if (frontier.length > 1) {

@@ -26,6 +26,7 @@ import {
   fitPlacements,
   type Pair,
   type Placement,
+  shorten,
   structuredDistance,
 } from '../reshape/placement-beam.ts';
 import {
@@ -34,6 +35,7 @@ import {
   type Template,
   templateOperations,
 } from '../reshape/template.ts';
+import { diagonalGates, isDiagonal } from './diagonal.ts';
 import { entanglerUse, twoWireGates, usesNeeded } from './two-wire.ts';
 
 /** A block: its whole unitary (planar), and which input basis states count. */
@@ -48,6 +50,8 @@ export type SynthesisOptions = {
   optimiser: FitJob['optimiser'];
   runJobs: RunJobs;
   control: Control;
+  /** A placement that is known to do, for example that of the circuit as written. */
+  hint?: readonly Pair[];
 };
 
 export type Synthesis = {
@@ -62,6 +66,9 @@ export type Synthesis = {
 
 /** Special targets are searched for up to this many entanglers before the generic count is taken. */
 const SEARCH_MAX = 11;
+/** The same on four wires and more, where a level costs much more. */
+const SEARCH_MAX_WIDE = 7;
+const HINT_STARTS = 6;
 const GENERIC_STARTS = 12;
 /** D between the wanted columns and those made (2^n x columns, planar). */
 export function wantedDistance(wanted: Wanted, made: Float64Array): number {
@@ -106,6 +113,20 @@ export async function synthesise(wanted: Wanted, options: SynthesisOptions): Pro
     const gates = twoWireGates(wanted.matrix, use);
     if (gates && uses !== undefined && (isFree || uses <= options.entanglersMax!)) {
       return exact(gates, uses);
+    }
+  }
+  const isComplete = options.links.length === (wanted.wires * (wanted.wires - 1)) / 2;
+  if (
+    wanted.wires > 3 &&
+    isWhole &&
+    isComplete &&
+    use.kind === 'cx-like' &&
+    isDiagonal(wanted.matrix, wanted.wires)
+  ) {
+    const gates = diagonalGates(wanted.matrix, wanted.wires);
+    const count = gates.filter(({ wires }) => wires.length === 2).length;
+    if (isFree || count <= options.entanglersMax!) {
+      return { ...exact(gates, 0), boundKind: 'found', notes: ['diagonal: a sum of parities'] };
     }
   }
   return new Search(wanted, options, use.kind !== 'other').run();
@@ -158,11 +179,14 @@ class Search {
     const isSmall = this.generic <= 5;
     const isSpecial = isSmall || this.looksSpecial();
     if (isSpecial || this.wanted.wires === 3) {
-      const most = Math.min(entanglersMax, isSmall ? this.generic + 4 : SEARCH_MAX);
+      const widest = this.wanted.wires > 3 ? SEARCH_MAX_WIDE : SEARCH_MAX;
+      const most = Math.min(entanglersMax, isSmall ? this.generic + 4 : widest);
       const found = await this.beam(most, isSpecial ? undefined : structuredDistance);
       if (found) return this.answer(found);
     }
     this.isExhausted = false;
+    const hinted = await this.fromHint();
+    if (hinted && hinted.pairs.length <= entanglersMax) return this.answer(hinted);
     if (entanglersMax < this.generic) {
       await this.placements(entanglersMax, GENERIC_STARTS);
       return this.answer(null);
@@ -170,7 +194,8 @@ class Search {
     for (let spare = 0; spare <= 4 && this.generic + spare <= entanglersMax; spare++) {
       if (this.options.control.stopped()) break;
       const found = await this.placements(this.generic + spare, GENERIC_STARTS);
-      if (found) return this.answer(found);
+      if (!found) continue;
+      return this.answer(isSpecial ? await this.shortened(found) : found);
     }
     return this.answer(null);
   }
@@ -211,6 +236,24 @@ class Search {
     if (!found.best) return null;
     const { best, isExhausted } = await descend(found.best, { ...this.fitting, ...limits });
     this.isExhausted = isExhausted;
+    this.note([best]);
+    return best;
+  }
+
+  /** The hint, when it fits and is shorter than what generic targets need, and then as short as it can be made. */
+  private async fromHint(): Promise<Placement | null> {
+    const { hint, tolerance } = this.options;
+    if (!hint || hint.length >= this.generic) return null;
+    const list = Array.from({ length: HINT_STARTS }, () => ({ pairs: hint, start: null }));
+    const [best] = await fitPlacements(list, {
+      ...this.fitting,
+      label: 'the placement as written',
+    });
+    return best && best.distance <= tolerance ? this.shortened(best) : null;
+  }
+
+  private async shortened(found: Placement): Promise<Placement> {
+    const best = await shorten(found, this.fitting);
     this.note([best]);
     return best;
   }
@@ -260,7 +303,9 @@ class Search {
     if (!best) throw new Error(`internal: no fit was tried on ${this.wanted.wires} wires`);
     const used = best.pairs.length;
     const isProven = found !== null && used === 0;
-    const isGeneric = found !== null && used === this.generic && !this.isExhausted;
+    const meetsBound = found !== null && used === this.generic && !this.isExhausted;
+    // counting dimensions bounds generic targets only
+    const isGeneric = meetsBound && !this.looksSpecial();
     const bound = isGeneric ? this.generic : found && this.isExhausted ? used : 0;
     const operations = templateOperations(this.templateOf(best.pairs), best.angles).map(
       (operation) => ({ ...operation, wires: operation.wires.map((w) => this.order[w]!) }),

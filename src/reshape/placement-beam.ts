@@ -125,6 +125,39 @@ export async function descend(found: Placement, settings: BeamSettings): Promise
   return { best, isExhausted: isComplete && !control.stopped() };
 }
 
+/**
+ * Takes entanglers out one by one, as long as the rest can still be fitted: from the angles that are left, and from a random
+ * start. More entanglers than needed make fits easy (Larocca et al., arXiv:2109.11676), so this goes down from a placement
+ * that is known to do.
+ */
+export async function shorten(found: Placement, settings: FitSettings): Promise<Placement> {
+  const { templateOf, tolerance, control, label } = settings;
+  let best = found;
+  // removals go round the circuit, so that one place is not tried again and again
+  let from = 0;
+  while (best.pairs.length > 0 && !control.stopped()) {
+    const { pairs, angles } = best;
+    const count = pairs.length;
+    control.report({ stage: `taking one of ${count} entanglers out of ${label}` });
+    const list = Array.from({ length: count }, (_, k) => (from + k) % count).flatMap((k) => {
+      const shorter = [...pairs.slice(0, k), ...pairs.slice(k + 1)];
+      const size = (list: readonly Pair[]): number => angleCount(templateOf(list));
+      const [start, end] = [size(pairs.slice(0, k)), size(pairs.slice(0, k + 1))];
+      const left = Float64Array.from([...angles.subarray(0, start), ...angles.subarray(end)]);
+      return [
+        { pairs: shorter, start: left },
+        { pairs: shorter, start: null },
+      ];
+    });
+    const [nearest] = await fitPlacements(list, { ...settings, label: `${label}, shorter` });
+    if (!nearest || nearest.distance > tolerance) break;
+    const removed = list.findIndex(({ pairs: shorter }) => shorter === nearest.pairs);
+    from = Math.floor(removed / 2) + from;
+    best = nearest;
+  }
+  return best;
+}
+
 /** All placements of this many pairs that are not wasteful, one of each key; undefined when there are more than `most`. */
 function allPlacements(
   count: number,
