@@ -140,6 +140,10 @@ function parseBare(p: Parser): Statement {
     advance(s);
     if (!stands(s, 'pragma')) expected(s, "'pragma' after #");
   }
+  // a text where a statement should begin is a mistake where it stands, not where the one before it ended
+  if (s.kind === 'string') {
+    return fail(s.problems, s.start, 'unexpected', `expected a statement, got "${s.word}"`);
+  }
   if (s.kind !== 'name') return expected(s, 'a statement');
   const word = s.word;
   if (p.inGate && /^(?:measure|reset|if|let|const)$/.test(word)) {
