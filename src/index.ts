@@ -23,6 +23,7 @@ export { canonical, makhlinInvariants } from './native/canonical.ts';
 export { oneWireGates } from './native/euler.ts';
 export { nativeSetOf } from './native/native-set.ts';
 export { toNative } from './native/to-native.ts';
+export { planWindows, withWindows } from './plan/windows.ts';
 export { readDevice } from './read/device.ts';
 export { readExpression } from './read/expression.ts';
 export { readMatrixMarket } from './read/matrix-market.ts';
