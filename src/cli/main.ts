@@ -3,6 +3,7 @@
  *
  * Exit codes: 0 yes, 1 no, 2 bad input or usage, 3 undecided within the limits, 70 a fault of ours, 130 stopped by Ctrl-C.
  */
+import { fileURLToPath } from 'node:url';
 import { Command, CommanderError, Option } from 'commander';
 import pc from 'picocolors';
 import type { CommandRequest, CommandResult } from '../commands.ts';
@@ -119,11 +120,38 @@ function program(finish: (code: number) => void): Command {
         })),
       );
     });
+  root
+    .command('desk')
+    .description('the same in a local web page; nothing leaves this machine')
+    .option(
+      '--port <n>',
+      'port on the loopback address; 0: any that is free',
+      wholeFrom(0, 65_535),
+      0,
+    )
+    .addHelpText('after', '\nExample: wiregauge desk --port 8080')
+    .action(async (words: { port: number }) => {
+      finish(await openDesk(words.port));
+    });
   for (const command of root.commands) {
     command.exitOverride().configureOutput({ outputError: () => {} });
     command.showSuggestionAfterError(true);
   }
   return root;
+}
+
+/** Serves the page until Ctrl-C. */
+async function openDesk(port: number): Promise<number> {
+  const { startDesk } = await import('./desk-server.ts');
+  const directory = fileURLToPath(new URL('./desk', import.meta.url));
+  const { url, close } = await startDesk({ port, directory });
+  process.stdout.write(`the desk is at ${url} (Ctrl-C ends it)\n`);
+  await new Promise<void>((resolve) => {
+    process.once('SIGINT', resolve);
+    process.once('SIGTERM', resolve);
+  });
+  await close();
+  return 0;
 }
 
 async function perform(words: Words, request: () => CommandRequest): Promise<number> {
