@@ -8,7 +8,8 @@ export type Progress = {
   stage: string;
   /** Done part in [0, 1], when it is known. */
   done?: number;
-  /** For live convergence: which start, which iteration, the distance D reached there. */
+  /** For live convergence: which job and start, which iteration, the distance D reached there. */
+  job?: string;
   start?: number;
   iteration?: number;
   distance?: number;

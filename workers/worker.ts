@@ -13,7 +13,7 @@ import { inProcess, type Job, type JobTable, type RunJobs, type RunOptions } fro
 import { type NodePort, nodeEndpoint } from './node-endpoint.ts';
 import type { Answer, ErrorEnvelope, ReportProgress, RunBatch, WorkerApi } from './protocol.ts';
 
-const REPORT_EVERY_MS = 60;
+const REPORT_EVERY_MS = 16;
 const PAUSE_EVERY_MS = 30;
 
 let isStopped = false;

@@ -18,13 +18,13 @@ export class ConvergenceData {
     this.version.value++;
   }
 
-  readonly add = ({ stage, start, iteration, distance }: Progress): void => {
+  readonly add = ({ stage, job = stage, start, iteration, distance }: Progress): void => {
     if (iteration === undefined || distance === undefined) return;
-    const key = `${stage}/${start ?? 0}`;
+    const key = `${job}/${start ?? 0}`;
     let curve = this.curves.get(key);
     if (!curve) {
       if (this.curves.size >= CURVES_MAX) return;
-      curve = { label: stage, iterations: [], distances: [] };
+      curve = { label: job, iterations: [], distances: [] };
       this.curves.set(key, curve);
     }
     curve.iterations.push(iteration);

@@ -43,7 +43,9 @@ export class Task<T> {
   }
 
   readonly onProgress = (progress: Progress): void => {
-    if (this.stage.peek() !== progress.stage) this.stage.value = progress.stage;
+    // single iterations belong to the picture of the fits; the line of words keeps its stage
+    const isStage = progress.iteration === undefined;
+    if (isStage && this.stage.peek() !== progress.stage) this.stage.value = progress.stage;
   };
 
   /** Asks for the best so far. */

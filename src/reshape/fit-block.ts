@@ -40,8 +40,8 @@ export type FitResult = {
   evaluations: number;
 };
 
-/** Iterations between two reports of progress, and between two pauses. */
-const REPORT_EVERY = 4;
+/** Iterations between two pauses. */
+const PAUSE_EVERY = 4;
 
 export async function fitBlock(job: FitJob, control: Control = freeRunning): Promise<FitResult> {
   const objective = new FitObjective(job.template, job.target, job.frozen);
@@ -51,13 +51,13 @@ export async function fitBlock(job: FitJob, control: Control = freeRunning): Pro
     iterationsMax: job.iterationsMax,
     control,
     onIteration: (iteration, value) => {
-      if (iteration % REPORT_EVERY !== 0) return;
-      control.report({ stage: job.id, iteration, distance: objective.distance(value) });
+      const distance = objective.distance(value);
+      control.report({ stage: 'fitting', job: job.id, iteration, distance });
     },
   });
   let turn = run.next();
   for (let k = 1; !turn.done; k++) {
-    if (k % REPORT_EVERY === 0) await control.pause();
+    if (k % PAUSE_EVERY === 0) await control.pause();
     turn = run.next();
   }
   return resultOf(job, objective, turn.value);
