@@ -8,7 +8,13 @@
 import { type Control, freeRunning } from '../control.ts';
 import type { Job } from '../jobs.ts';
 import { normal, random } from '../numeric/random.ts';
-import { levenbergMarquardt } from '../optimise/levenberg-marquardt.ts';
+import { bfgs } from '../optimise/bfgs.ts';
+import { lBfgs } from '../optimise/l-bfgs.ts';
+import {
+  type LevenbergMarquardtOptions,
+  levenbergMarquardt,
+} from '../optimise/levenberg-marquardt.ts';
+import { nelderMead } from '../optimise/nelder-mead.ts';
 import type { OptimiserResult, Status } from '../optimise/result.ts';
 import { FitObjective, type FitTarget } from './objective.ts';
 import type { Template } from './template.ts';
@@ -46,11 +52,11 @@ const PAUSE_EVERY = 4;
 export async function fitBlock(job: FitJob, control: Control = freeRunning): Promise<FitResult> {
   const objective = new FitObjective(job.template, job.target, job.frozen);
   const start = startingAngles(job, objective.size);
-  const run = levenbergMarquardt(objective, start, {
+  const run = minimise(job, objective, start, {
     goal: objective.valueOf(job.goal),
     iterationsMax: job.iterationsMax,
     control,
-    onIteration: (iteration, value) => {
+    onIteration: (iteration: number, value: number) => {
       const distance = objective.distance(value);
       control.report({ stage: 'fitting', job: job.id, iteration, distance });
     },
@@ -61,6 +67,47 @@ export async function fitBlock(job: FitJob, control: Control = freeRunning): Pro
     turn = run.next();
   }
   return resultOf(job, objective, turn.value);
+}
+
+/** The optimiser that the job asks for; all four take the same options and yield once an iteration. */
+function minimise(
+  { optimiser, frozen }: FitJob,
+  objective: FitObjective,
+  start: Float64Array,
+  options: LevenbergMarquardtOptions,
+): Generator<void, OptimiserResult> {
+  switch (optimiser) {
+    case 'lm':
+      return levenbergMarquardt(objective, start, options);
+    case 'bfgs':
+      return bfgs(objective, start, options);
+    case 'lbfgs':
+      return lBfgs(objective, start, options);
+    case 'nelder-mead':
+      return withoutFrozen(objective, start, frozen, options);
+  }
+}
+
+/** Nelder-Mead knows no gradient that frozen angles could drop out of, so it gets the open ones only. */
+function* withoutFrozen(
+  objective: FitObjective,
+  start: Float64Array,
+  frozen: Uint8Array | undefined,
+  options: LevenbergMarquardtOptions,
+): Generator<void, OptimiserResult> {
+  const open = [...start.keys()].filter((k) => !frozen?.[k]);
+  const all = start.slice();
+  const fill = (x: Float64Array): Float64Array => {
+    for (const [k, index] of open.entries()) all[index] = x[k]!;
+    return all;
+  };
+  const problem = {
+    size: open.length,
+    value: (x: Float64Array): number => objective.value(fill(x)),
+  };
+  const openStart = Float64Array.from(open, (index) => start[index]!);
+  const found = yield* nelderMead(problem, openStart, options);
+  return { ...found, x: fill(found.x).slice() };
 }
 
 function resultOf(job: FitJob, objective: FitObjective, found: OptimiserResult): FitResult {

@@ -93,6 +93,13 @@ export class FitObjective implements NormalProblem {
   }
 
   linearise(angles: Float64Array, normal: Float64Array, gradient: Float64Array): number {
+    const value = this.valueAndGradient(angles, gradient);
+    gramInto(normal, this.rows, this.size, this.residual.length);
+    return value;
+  }
+
+  /** F and its gradient; leaves the Jacobian behind in `rows`. */
+  valueAndGradient(angles: Float64Array, gradient: Float64Array): number {
     const value = this.value(angles);
     const width = this.residual.length;
     // the residual is of V itself; the P' need V step by step
@@ -111,7 +118,6 @@ export class FitObjective implements NormalProblem {
       for (let i = 0; i < width; i++) sum += this.rows[at + i]! * this.residual[i]!;
       gradient[k] = sum;
     }
-    gramInto(normal, this.rows, this.size, width);
     return value;
   }
 
