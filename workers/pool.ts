@@ -29,7 +29,11 @@ type Slot = {
   handle: WorkerHandle;
   api: Remote<WorkerApi>;
   ended: Promise<string>;
+  /** Ends the worker and says so; a browser's own `terminate` tells nobody. */
+  end(reason: string): void;
   isFree: boolean;
+  /** Counts the calls it was given, so that a late timer does not end the wrong one. */
+  calls: number;
 };
 
 export function errorOf({ problems, message, stack }: ErrorEnvelope): Error {
@@ -61,10 +65,22 @@ export class WorkerPool {
     }
     if (this.slots.length < this.size) {
       const handle = this.start();
+      let tell: (reason: string) => void = () => {};
       const ended = new Promise<string>((resolve) => {
+        tell = resolve;
         handle.onEnd(resolve);
       });
-      const slot: Slot = { handle, api: wrap<WorkerApi>(handle.endpoint), ended, isFree: false };
+      const slot: Slot = {
+        handle,
+        api: wrap<WorkerApi>(handle.endpoint),
+        ended,
+        end: (reason) => {
+          handle.terminate();
+          tell(reason);
+        },
+        isFree: false,
+        calls: 0,
+      };
       this.slots.push(slot);
       return Promise.resolve(slot);
     }
@@ -80,7 +96,7 @@ export class WorkerPool {
   }
 
   private drop(slot: Slot): void {
-    slot.handle.terminate();
+    slot.end('dropped');
     this.slots.splice(this.slots.indexOf(slot), 1);
     const next = this.waiting.shift();
     if (next) void this.take().then(next);
@@ -91,6 +107,7 @@ export class WorkerPool {
     slot: Slot,
     run: (api: Remote<WorkerApi>) => Promise<Answer<T>>,
   ): Promise<T> {
+    slot.calls++;
     const lost = slot.ended.then((reason) => {
       throw new WorkerLost(reason);
     });
@@ -181,8 +198,10 @@ export class WorkerPool {
 
   private stopSlot(slot: Slot): void {
     void slot.api.stop();
+    const { calls } = slot;
     const timer = setTimeout(() => {
-      if (this.slots.includes(slot) && !slot.isFree) slot.handle.terminate();
+      const isSameCall = slot.calls === calls && !slot.isFree;
+      if (this.slots.includes(slot) && isSameCall) slot.end('it did not stop when asked');
     }, GRACE_MS);
     void slot.ended.then(() => clearTimeout(timer));
     (timer as { unref?: () => void }).unref?.();
@@ -215,6 +234,6 @@ export class WorkerPool {
 
   /** Ends all workers. */
   close(): void {
-    for (const slot of this.slots.splice(0)) slot.handle.terminate();
+    for (const slot of this.slots.splice(0)) slot.end('the pool was closed');
   }
 }

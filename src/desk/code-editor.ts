@@ -130,7 +130,9 @@ export function createEditor(host: HTMLElement, text: string, events: EditorEven
         }),
       ],
     }),
-  });
+  }); // the scroller is reached by keyboard of its own, for texts that are only read
+  view.scrollDOM.tabIndex = 0;
+
   const placeOf = (line: number, column: number): number => {
     const { doc } = view.state;
     const found = doc.line(Math.min(Math.max(line, 1), doc.lines));

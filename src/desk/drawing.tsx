@@ -47,7 +47,6 @@ export function DrawingView({ sheet, caption, empty }: Props) {
         <section
           ref={host}
           class="scroll"
-          // biome-ignore lint/a11y/noNoninteractiveTabindex: what scrolls must be reachable by keyboard
           tabIndex={0}
           aria-label={`${caption}, scrollable`}
           onPointerMove={point}

@@ -64,7 +64,8 @@ export function InfluenceTable({ model, report }: { model: NarrowModel; report: 
   const withNumbers = n <= NUMBERS_WIRES_MAX;
   return (
     <div class="influence">
-      <div class="scroll">
+      {/* a region of its own, so that a keyboard can scroll it */}
+      <div class="scroll" tabIndex={0} role="region" aria-label="Influence table">
         <table
           role="grid"
           ref={grid}
@@ -103,7 +104,6 @@ export function InfluenceTable({ model, report }: { model: NarrowModel; report: 
                       class={`${kind} shade-${shade(bound)}`}
                       tabIndex={isFocus ? 0 : -1}
                       aria-selected={isChosen}
-                      aria-label={`${out} leaves, ${into} enters: ${cellWord(kind, bound)}`}
                       onFocus={() => {
                         focus.value = pair;
                         look(pair);
@@ -111,6 +111,7 @@ export function InfluenceTable({ model, report }: { model: NarrowModel; report: 
                       onClick={() => choose(pair)}
                       onPointerEnter={() => look(pair)}
                     >
+                      <span class="only-read">{`${out} leaves, ${into} enters: ${cellWord(kind, bound)}`}</span>
                       {withNumbers ? (
                         cellText(kind, bound)
                       ) : (

@@ -226,7 +226,13 @@ function TradeView({ model }: { model: NarrowModel }) {
   const hasSuccess = points.some(({ success }) => success !== null);
   return (
     <div class="trade">
-      <div class="scroll-x" dangerouslySetInnerHTML={{ __html: svg }} />
+      <div
+        class="scroll-x"
+        tabIndex={0}
+        role="region"
+        aria-label="Trade of wires against depth"
+        dangerouslySetInnerHTML={{ __html: svg }}
+      />
       <table class="numbers">
         <caption>By order and early measurement alone, with the gates as written</caption>
         <thead>
@@ -441,7 +447,7 @@ export function Fits({ fits }: { fits: readonly FitRow[] }) {
   return (
     <details class="text">
       <summary>{count(fits.length, 'fit')}</summary>
-      <div class="scroll-x">
+      <div class="scroll-x" tabIndex={0} role="region" aria-label="Fits">
         <table class="numbers">
           <thead>
             <tr>

@@ -110,10 +110,11 @@ export function sentence(text: string): string {
 }
 
 export function bracketSentence({ bracket }: NarrowReport): string | null {
-  if (!bracket) return null;
-  const least = `Every circuit of that kind is wrong by at least ${figure(bracket.lower)} in process infidelity`;
+  // a road that is exactly open needs no bracket
+  if (!bracket || bracket.lower === 0) return null;
+  const least = `Every circuit of that kind is at a distance D of at least ${figure(bracket.lower)}`;
   if (bracket.reached === null) return `${least}.`;
-  return `${least}; the nearest one found is wrong by ${figure(bracket.reached)}.`;
+  return `${least}; the nearest one found is at ${figure(bracket.reached)}.`;
 }
 
 export function checkSentence({ check, distance }: NarrowReport): string | null {
