@@ -7,6 +7,10 @@
  * unless the comment says so. Functions without `Into` allocate and are meant for code outside hot loops.
  * Cost: products 8mnk flops, the rest linear in the number of entries.
  */
+import { kernels } from './kernels/kernels.ts';
+
+/** Multiply-adds from which the compiled product pays for copying its operands. */
+const KERNEL_WORK = 512;
 
 /** The n x n identity. */
 export function identity(n: number): Float64Array {
@@ -24,6 +28,10 @@ export function mulInto(
   k: number,
   n: number,
 ): Float64Array {
+  if (m * k * n >= KERNEL_WORK) {
+    kernels.multiplyInto(out, a, b, m, k, n);
+    return out;
+  }
   out.fill(0, 0, 2 * m * n);
   const ia = m * k;
   const ib = k * n;

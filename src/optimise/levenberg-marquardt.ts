@@ -12,6 +12,7 @@
  * Fails: never; the status says why it stopped, and x is the best point seen.
  */
 import type { Control } from '../control.ts';
+import { kernels } from '../numeric/kernels/kernels.ts';
 import type { OptimiserResult, Status } from './result.ts';
 
 export type NormalProblem = {
@@ -150,7 +151,8 @@ function solveStep(
   damping: number,
   p: number,
 ): number {
-  if (!choleskyInto(factor, normal, scale, damping, p)) return -1;
+  for (let k = 0; k < p; k++) step[k] = damping * scale[k]!;
+  if (!kernels.choleskyInto(factor, normal, step, p)) return -1;
   for (let r = 0; r < p; r++) {
     let sum = -gradient[r]!;
     for (let k = 0; k < r; k++) sum -= factor[r * p + k]! * step[k]!;
@@ -167,42 +169,4 @@ function solveStep(
     predicted += step[k]! * (damping * scale[k]! * step[k]! - gradient[k]!);
   }
   return predicted / 2;
-}
-
-/** Lower Cholesky factor of normal + damping diag(scale); false when it is not positive definite. */
-function choleskyInto(
-  l: Float64Array,
-  a: Float64Array,
-  scale: Float64Array,
-  damping: number,
-  p: number,
-): boolean {
-  for (let r = 0; r < p; r++) {
-    const rowR = r * p;
-    let s = 0;
-    // two columns at a time share the loads of row r
-    for (; s + 1 < r; s += 2) {
-      const [rowS, rowT] = [s * p, s * p + p];
-      let sum = a[rowR + s]!;
-      let other = a[rowR + s + 1]!;
-      for (let k = 0; k < s; k++) {
-        const x = l[rowR + k]!;
-        sum -= x * l[rowS + k]!;
-        other -= x * l[rowT + k]!;
-      }
-      const first = sum / l[rowS + s]!;
-      l[rowR + s] = first;
-      l[rowR + s + 1] = (other - first * l[rowT + s]!) / l[rowT + s + 1]!;
-    }
-    for (; s < r; s++) {
-      let sum = a[rowR + s]!;
-      for (let k = 0; k < s; k++) sum -= l[rowR + k]! * l[s * p + k]!;
-      l[rowR + s] = sum / l[s * p + s]!;
-    }
-    let sum = a[rowR + r]! + damping * scale[r]!;
-    for (let k = 0; k < r; k++) sum -= l[rowR + k]! ** 2;
-    if (!(sum > 0)) return false;
-    l[rowR + r] = Math.sqrt(sum);
-  }
-  return true;
 }

@@ -18,6 +18,7 @@
 import { assert } from '../assert.ts';
 import { gateTable } from '../circuit/gates.ts';
 import { adjoint, mulInto } from '../numeric/complex-matrix.ts';
+import { kernels } from '../numeric/kernels/kernels.ts';
 import type { NormalProblem } from '../optimise/levenberg-marquardt.ts';
 import { angleCount, entanglerMatrix, type Template } from './template.ts';
 
@@ -94,7 +95,7 @@ export class FitObjective implements NormalProblem {
 
   linearise(angles: Float64Array, normal: Float64Array, gradient: Float64Array): number {
     const value = this.valueAndGradient(angles, gradient);
-    gramInto(normal, this.rows, this.size, this.residual.length);
+    kernels.gramInto(normal, this.rows, this.size, this.residual.length);
     return value;
   }
 
@@ -151,7 +152,7 @@ export class FitObjective implements NormalProblem {
   /** hermitian = X^dag P X for a single-wire Pauli. */
   private pauliOf(axis: 0 | 1 | 2, stride: number): void {
     projectRows(this.half, this.x, this.d, stride, axis);
-    squareInto(this.hermitian, this.half, this.d);
+    kernels.squareInto(this.hermitian, this.half, this.d / 2, this.d);
   }
 
   /** hermitian = X^dag (2 G) X, made traceless, for an entangler with dE/da = -i G E. */
@@ -408,33 +409,6 @@ function projectRows(
   }
 }
 
-/** out = 2 b^dag b - 1 for b of d/2 x d. */
-function squareInto(out: Float64Array, b: Float64Array, d: number): void {
-  const im = d * d;
-  const half = im / 2;
-  out.fill(0);
-  for (let r = 0; r < half; r += d) {
-    for (let i = 0; i < d; i++) {
-      const br = 2 * b[r + i]!;
-      const bi = 2 * b[half + r + i]!;
-      const row = i * d;
-      for (let j = i; j < d; j++) {
-        const cr = b[r + j]!;
-        const ci = b[half + r + j]!;
-        out[row + j]! += br * cr + bi * ci;
-        out[im + row + j]! += br * ci - bi * cr;
-      }
-    }
-  }
-  for (let i = 0; i < d; i++) {
-    out[i * d + i]! -= 1;
-    for (let j = i + 1; j < d; j++) {
-      out[j * d + i] = out[i * d + j]!;
-      out[im + j * d + i] = -out[im + i * d + j]!;
-    }
-  }
-}
-
 function rotateRows(
   w: Float64Array,
   d: number,
@@ -515,37 +489,6 @@ function applyPair(
         }
         w[k + at[r]!] = x;
         w[im + k + at[r]!] = y;
-      }
-    }
-  }
-}
-
-/** Lower triangle of out = j j^T for the p x m matrix j, two by two. */
-function gramInto(out: Float64Array, j: Float64Array, p: number, m: number): void {
-  for (let r = 0; r < p; r += 2) {
-    const hasSecond = r + 1 < p;
-    const a = r * m;
-    const b = hasSecond ? a + m : a;
-    for (let s = 0; s <= r + 1 && s < p; s += 2) {
-      const hasOther = s + 1 < p;
-      const e = s * m;
-      const f = hasOther ? e + m : e;
-      let [ae, af, be, bf] = [0, 0, 0, 0];
-      for (let k = 0; k < m; k++) {
-        const x = j[a + k]!;
-        const y = j[b + k]!;
-        const u = j[e + k]!;
-        const v = j[f + k]!;
-        ae += x * u;
-        af += x * v;
-        be += y * u;
-        bf += y * v;
-      }
-      out[r * p + s] = ae;
-      if (hasOther) out[r * p + s + 1] = af;
-      if (hasSecond) {
-        out[(r + 1) * p + s] = be;
-        if (hasOther) out[(r + 1) * p + s + 1] = bf;
       }
     }
   }
