@@ -8,7 +8,7 @@ import type { CompareModel } from './models.ts';
 import { jsonOf } from './narrow-page.tsx';
 import { Failure, Numbers, RunBar, SaveBar, SaveButton } from './parts.tsx';
 import { saveText } from './save.ts';
-import { distanceRows, figure, sentence } from './words.ts';
+import { distanceRows, figure, probability, sentence } from './words.ts';
 
 export function ComparePage({ model }: { model: CompareModel }) {
   const isReady =
@@ -108,8 +108,9 @@ function CompareAnswer({ model }: { model: CompareModel }) {
       {witness && (
         <p>
           For the input {witness.input}, the output {witness.output} has probability{' '}
-          {figure(witness.probabilityOriginal)} in the original and{' '}
-          {figure(witness.probabilityRewritten)} in the rewritten circuit.
+          {probability(witness.probabilityOriginal, witness.probabilityRewritten)} in the original
+          and {probability(witness.probabilityRewritten, witness.probabilityOriginal)} in the
+          rewritten circuit.
         </p>
       )}
       {relabelling && (

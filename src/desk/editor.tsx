@@ -38,9 +38,19 @@ export function Editor({ sheet, label, rows = 14 }: Props) {
     };
   }, []);
 
-  useSignalEffect(() => editor.current?.setText(sheet.text.value));
-  useSignalEffect(() => editor.current?.setProblems(sheet.problems.value));
-  useSignalEffect(() => editor.current?.setLinkedLine(sheet.line.value));
+  // each value is read first: an effect that runs before the editor is there must still listen to it
+  useSignalEffect(() => {
+    const text = sheet.text.value;
+    editor.current?.setText(text);
+  });
+  useSignalEffect(() => {
+    const problems = sheet.problems.value;
+    editor.current?.setProblems(problems);
+  });
+  useSignalEffect(() => {
+    const line = sheet.line.value;
+    editor.current?.setLinkedLine(line);
+  });
 
   const goTo = (line: number, column: number): void => {
     if (editor.current) return editor.current.goTo(line, column);

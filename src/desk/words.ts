@@ -16,6 +16,13 @@ export function figure(x: number): string {
   return `${digits} × 10${superscript(Number(power))}`;
 }
 
+/** A probability with as many digits as it takes to tell it from another one, and two more. */
+export function probability(x: number, other: number): string {
+  const gap = Math.abs(x - other);
+  const digits = gap === 0 ? 3 : Math.min(15, Math.max(3, Math.ceil(-Math.log10(gap)) + 2));
+  return x.toFixed(digits);
+}
+
 function superscript(power: number): string {
   const digits = '⁰¹²³⁴⁵⁶⁷⁸⁹';
   const sign = power < 0 ? '⁻' : '';

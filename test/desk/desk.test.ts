@@ -166,6 +166,8 @@ describe.runIf(isHere || process.env.CI)('the desk', () => {
     const page = await open();
     await page.getByRole('combobox', { name: 'Example' }).selectOption({ label: 'no opening' });
     await page.getByText('It is written on 3 wires').waitFor(WAIT);
+    // the editor shows the example that was chosen
+    await page.locator('.cm-line', { hasText: 'in a ring' }).waitFor(WAIT);
     await page.getByRole('button', { name: 'Narrow it' }).click();
     await page
       .getByText(/No equal circuit has fewer than 3 wires: none lets .* at least 0\.\d+/i)
@@ -189,6 +191,8 @@ describe.runIf(isHere || process.env.CI)('the desk', () => {
     expect(list[0]).toMatch(/4/);
     expect(list[0]).toMatch(/unknown gate: hh/i);
     expect(list[1]).toMatch(/5/);
+    // and marked in the text itself
+    expect(await page.locator('.cm-lintRange-error').count()).toBe(2);
     await accessible(page);
     await shot(page, 'mistakes');
     await page.getByText('Fewest wires, by what must stay the same').waitFor({ state: 'detached' });
