@@ -1,4 +1,7 @@
 import { describe, expect, test } from 'vitest';
+import { gate } from '../../src/circuit/circuit.ts';
+import { applyGateInto } from '../../src/circuit/unitary.ts';
+import { adjoint, mul } from '../../src/numeric/complex-matrix.ts';
 import { hilbertSchmidtDistance } from '../../src/numeric/distance.ts';
 import { random } from '../../src/numeric/random.ts';
 import { haarUnitary } from '../../src/numeric/svd.ts';
@@ -58,6 +61,14 @@ test('the gradient of every kind of target agrees with finite differences', () =
       kind: 'columns',
       matrix: Float64Array.from({ length: 8 }, (_, k) => matrix[4 * k]!),
       columns: 1,
+    },
+    {
+      kind: 'carry',
+      pulled: (['X', 'Z'] as const).map((pauli) => {
+        const moved = matrix.slice();
+        applyGateInto(moved, gate(pauli.toLowerCase(), [1]), 2, 4);
+        return { pauli, wire: 1, matrix: mul(adjoint(matrix, 4), moved, 4) };
+      }),
     },
   ] as const;
   for (const target of targets) {
