@@ -14,6 +14,15 @@ import { InputError } from '../input-error.ts';
 import type { Unfolded } from './unfold.ts';
 
 /** What is observed of both circuits, in the terms of the original. */
+/** Which bit of the rewritten circuit stands for each bit of the original that somebody can see. */
+export function bitPairs(
+  original: Circuit,
+  rewritten: Circuit,
+): { original: number; rewritten: number }[] {
+  const partner = matchBits(original, rewritten);
+  return visibleBits(original).map((bit, k) => ({ original: bit, rewritten: partner[k]! }));
+}
+
 export type Observation = {
   names: { inputs: string[]; outputs: string[]; bits: string[]; hasZeroInputs: boolean };
   kept: readonly number[];

@@ -63,8 +63,17 @@ function annotated(operation: Operation, pattern: RegExp): number {
   return -1;
 }
 
+/** At least this many bits of state index: known before anything is evolved. */
+export function unfoldedBitsLeast(circuit: Circuit, contract: Contract): number {
+  const anyInputs = contract.inputs.filter((rule) => rule === 'any').length;
+  const resets = circuit.operations.filter(({ kind, condition }) => kind === 'reset' && !condition);
+  return anyInputs + (isAnnotated(circuit) ? resets.length : circuit.wires + resets.length);
+}
+
 /** Evolves the circuit; `inputs` rules are those of the original's wires. */
 export function unfold(circuit: Circuit, contract: Contract): Unfolded {
+  const least = unfoldedBitsLeast(circuit, contract);
+  if (least > UNFOLDED_BITS_MAX) throw tooLarge(least, circuit.name);
   const run = new Unfolding(circuit, contract);
   circuit.operations.forEach((operation, k) => {
     run.step(operation, k);
@@ -144,11 +153,7 @@ class Unfolding {
   private checkSize(more: number): void {
     const wanted = this.axes + this.columnInputs.length + more;
     if (wanted <= UNFOLDED_BITS_MAX) return;
-    throw new InputError({
-      code: 'too-large',
-      message: `dense comparison needs 2^${wanted} or more complex numbers; 2^${UNFOLDED_BITS_MAX} is the limit here`,
-      file: this.circuit.name,
-    });
+    throw tooLarge(wanted, this.circuit.name);
   }
 
   private axisFor(wire: number): number {
@@ -336,6 +341,14 @@ class Unfolding {
       unfoldedWires: this.fresh,
     };
   }
+}
+
+function tooLarge(bits: number, file: string): InputError {
+  return new InputError({
+    code: 'too-large',
+    message: `dense comparison needs 2^${bits} or more complex numbers; 2^${UNFOLDED_BITS_MAX} is the limit here`,
+    file,
+  });
 }
 
 function chosen(
