@@ -76,11 +76,15 @@ describe('each example shows what it says', () => {
     expect(off.witness).not.toBeNull();
   });
 
-  test('forty wires: surveyed by structure', async () => {
+  test('forty wires: one wire is enough, proved gate by gate', async () => {
     const found = await survey('forty-stations.qasm');
     expect(found.counts.wires).toBe(40);
     expect(found.structure.width).toBe(2);
     expect(found.early!.width).toBe(1);
+    const { report, exitCode } = await narrow('forty-stations.qasm');
+    expect(exitCode).toBe(0);
+    expect((report as NarrowReport).after!.wires).toBe(1);
+    expect((report as NarrowReport).check).toMatchObject({ method: 'gate by gate', proof: true });
   });
 
   test('the device: an estimate before and after', async () => {
