@@ -8,6 +8,7 @@ import { Command, CommanderError, Option } from 'commander';
 import pc from 'picocolors';
 import type { CommandRequest, CommandResult } from '../commands.ts';
 import { formatProblem, InputError, nearestWord } from '../input-error.ts';
+import { type Captioned, pictureSheet } from '../write/picture-sheet.ts';
 import { reportHtml } from '../write/report-html.ts';
 import { checkWritable, sourceOf, writeWhole } from './files.ts';
 import {
@@ -21,6 +22,7 @@ import {
   type Words,
   wholeFrom,
 } from './options.ts';
+import { picturesOf } from './pictures.ts';
 import { progressView } from './progress.ts';
 import { runToEnd } from './run.ts';
 import { showReport } from './show.ts';
@@ -62,6 +64,7 @@ function program(finish: (code: number) => void): Command {
     );
   shared(root.command('survey').argument('<circuit>', 'circuit or unitary'))
     .description('counts, reusable pairs, influence, and the width under each contract')
+    .option('--picture <file>', 'draw the circuit and the trade of wires against depth (.svg)')
     .addHelpText('after', '\nExample: wiregauge survey parity.qasm')
     .action(async (circuit: string, words: Words) => {
       finish(await perform(words, () => ({ command: 'survey', circuit: sourceOf(circuit), options: commonOptions(words) }))); // biome-ignore format: one request
@@ -70,6 +73,7 @@ function program(finish: (code: number) => void): Command {
     .description('the main job: fewer wires, native gates, checked')
     .option('--wires <n>', 'this many wires (default: the fewest)', wholeFrom(1, 10_000))
     .option('--out <file>', 'write the narrower circuit (OpenQASM 3)')
+    .option('--picture <file>', 'draw the circuit before and after (.svg)')
     .addHelpText('after', '\nExample: wiregauge narrow block.qasm --out narrow.qasm')
     .action(async (circuit: string, words: Words) => {
       const { wires } = words;
@@ -156,9 +160,13 @@ async function openDesk(port: number): Promise<number> {
 
 async function perform(words: Words, request: () => CommandRequest): Promise<number> {
   const started = performance.now();
-  for (const file of [words.out, words.report]) if (file) checkWritable(file, words.force === true);
+  for (const file of [words.out, words.report, words.picture])
+    if (file) checkWritable(file, words.force === true);
   if (words.report && !/\.(json|html)$/.test(words.report)) {
     throw new InputError({ code: 'bad-report', message: `expected a .json or .html file for --report, got ${words.report}` }); // biome-ignore format: one message
+  }
+  if (words.picture && !words.picture.endsWith('.svg')) {
+    throw new InputError({ code: 'bad-picture', message: `expected a .svg file for --picture, got ${words.picture}` }); // biome-ignore format: one message
   }
   const asked = request();
   const view = progressView(words.quiet === true);
@@ -173,12 +181,21 @@ async function perform(words: Words, request: () => CommandRequest): Promise<num
     return isInterrupted ? 130 : 3;
   }
   result.report.seconds = Math.round(performance.now() - started) / 1000;
-  deliver(result, words, asked.command);
+  const isDrawn = words.picture !== undefined || words.report?.endsWith('.html') === true;
+  const pictures = isDrawn ? await picturesOf(asked, result) : [];
+  if (words.picture)
+    writeWhole(words.picture, pictureSheet(pictures, `wiregauge ${asked.command}`));
+  deliver(result, words, asked.command, pictures);
   if (isInterrupted) return 130;
   return isTimedOut && result.exitCode !== 0 ? 3 : result.exitCode;
 }
 
-function deliver({ report, text, warnings }: CommandResult, words: Words, command: string): void {
+function deliver(
+  { report, text, warnings }: CommandResult,
+  words: Words,
+  command: string,
+  pictures: readonly Captioned[],
+): void {
   for (const warning of warnings) {
     process.stderr.write(`${pc.yellow('warning')}: ${formatProblem(warning)}\n`);
   }
@@ -190,7 +207,7 @@ function deliver({ report, text, warnings }: CommandResult, words: Words, comman
   if (words.report) {
     const isHtml = words.report.endsWith('.html');
     const summary = 'reason' in report ? report.reason : 'verdict' in report ? report.verdict : 'survey'; // biome-ignore format: one choice
-    writeWhole(words.report, isHtml ? reportHtml(report, { title: `wiregauge ${command}`, summary }) : json); // biome-ignore format: one call
+    writeWhole(words.report, isHtml ? reportHtml(report, { title: `wiregauge ${command}`, summary, pictures }) : json); // biome-ignore format: one call
   }
   if (words.json) {
     process.stdout.write(json);

@@ -20,6 +20,7 @@ export type Words = {
   timeLimit?: number;
   out?: string;
   report?: string;
+  picture?: string;
   json?: boolean;
   quiet?: boolean;
   force?: boolean;

@@ -20,16 +20,13 @@ export function Convergence({ data }: { data: ConvergenceData }) {
   });
   useEffect(() => () => plot.current?.destroy(), []);
   void data.version.value;
-  const curves = [...data.curves.values()];
-  const best = curves.reduce(
-    (least, { distances }) => Math.min(least, distances.at(-1) ?? least),
-    Number.POSITIVE_INFINITY,
-  );
+  const drawn = data.curves.size;
+  const all = drawn + data.undrawn.size;
   return (
-    <figure class="convergence" hidden={curves.length === 0}>
+    <figure class="convergence" hidden={drawn === 0}>
       <figcaption>
-        Distance D of every start, by iteration: {count(curves.length, 'start')}, the best (drawn
-        thick) at D = {figure(best)}
+        Distance D by iteration: {count(all, 'start')}
+        {all > drawn ? `, the first ${drawn} drawn` : ''}, the best at D = {figure(data.best)}
       </figcaption>
       <div ref={host} class="plot" aria-hidden="true" />
     </figure>

@@ -43,7 +43,8 @@ function startBrowserWorker(): WorkerHandle {
 }
 
 export function workersUsable(): number {
-  return Math.max(1, Math.min(WORKERS_MAX, navigator.hardwareConcurrency || 2));
+  // one core is left for typing and drawing
+  return Math.max(1, Math.min(WORKERS_MAX, (navigator.hardwareConcurrency || 2) - 1));
 }
 
 export class Lane {

@@ -155,6 +155,22 @@ describe('answers', () => {
     expect(readFileSync(page, 'utf8')).toMatch(/^<!doctype html>/);
   });
 
+  test('--picture draws before, after and the trade; the page of a report holds them too', () => {
+    const picture = join(folder, 'opening.svg');
+    const page = join(folder, 'opening.html');
+    const run = wiregauge('narrow', example('opening.qasm'), '--picture', picture, '--report', page, '--quiet'); // biome-ignore format: one call
+    expect(run.status).toBe(0);
+    const svg = readFileSync(picture, 'utf8');
+    for (const word of ['Before: ', 'After', 'Wires against depth', 'station[3]']) {
+      expect(svg).toContain(word);
+    }
+    expect(svg.match(/<svg/g)).toHaveLength(4);
+    expect(readFileSync(page, 'utf8').match(/<figure>/g)).toHaveLength(3);
+    expect(wiregauge('survey', 'swap', '--picture', 'x.png').stderr).toContain(
+      'expected a .svg file',
+    );
+  });
+
   test('the same bytes for any number of workers', () => {
     const texts = [0, 1, 2].map((workers) => {
       const { status, stdout } = wiregauge('narrow', example('opening.qasm'), '--workers', `${workers}`, '--quiet'); // biome-ignore format: one call
