@@ -162,6 +162,57 @@ describe.runIf(isHere || process.env.CI)('the desk', () => {
     await page.context().close();
   });
 
+  test('the whole job by keyboard alone: from the first Tab to the saved file', async () => {
+    const page = await open();
+    await surveyed(page);
+    await page.locator('.cm-content').first().waitFor(WAIT);
+    /** Tabs on until the control of this name has the focus. */
+    const tabTo = async (name: RegExp): Promise<void> => {
+      for (let k = 0; k < 60; k++) {
+        await page.keyboard.press('Tab');
+        const found = await page.evaluate(() => document.activeElement?.textContent ?? '');
+        if (name.test(found.trim())) return;
+      }
+      throw new Error(`no way by Tab to ${name}`);
+    };
+    await tabTo(/^Narrow it$/);
+    await page.keyboard.press('Enter');
+    await page.getByText('Narrowed: 4 wires became 3.').waitFor(WAIT);
+    await tabTo(/^narrowed\.qasm$/);
+    const [download] = await Promise.all([
+      page.waitForEvent('download'),
+      page.keyboard.press('Enter'),
+    ]);
+    expect(readFileSync(await download.path(), 'utf8')).toContain('@wiregauge.enters 3');
+    await page.context().close();
+  });
+
+  test('a gate under the pointer lights up its line of text, and its cells', async () => {
+    const page = await open();
+    await surveyed(page);
+    await page.locator('.cm-content').first().waitFor(WAIT);
+    const gate = page.locator('svg [data-line="8"]').first();
+    await gate.hover();
+    await page.locator('.cm-line[class*=linked]', { hasText: 'rx(0.7) station[0]' }).waitFor(WAIT);
+    await shot(page, 'hover');
+    await page.context().close();
+  });
+
+  test('sixty wires and two thousand gates are drawn and surveyed', async () => {
+    const page = await open();
+    await surveyed(page);
+    const lines = ['OPENQASM 3;', 'include "stdgates.inc";', 'qubit[60] river;'];
+    for (let k = 0; k < 1000; k++) {
+      const a = (7 * k) % 60;
+      lines.push(`ry(0.3) river[${a}];`, `cx river[${a}], river[${(a + 1 + (k % 9)) % 60}];`);
+    }
+    await write(page, 'Circuit as text', lines.join('\n'));
+    await page.getByText('It is written on 60 wires').waitFor(WAIT);
+    expect(await page.locator('svg [data-line]').count()).toBeGreaterThan(1900);
+    await accessible(page);
+    await page.context().close();
+  });
+
   test('the impossible case says why, with the bound', async () => {
     const page = await open();
     await page.getByRole('combobox', { name: 'Example' }).selectOption({ label: 'no opening' });
