@@ -6,7 +6,9 @@
  * out. The distance is that of `channel-distance.ts`; it is a proof up to its error bar.
  * Matching: wires by number, or by the annotations of a narrowed circuit; bits by name, else by position. Extra wires of
  * the rewritten circuit start in |0> and are dropped.
- * Fails: InputError for circuits that cannot be matched; verdict `undecided` when they are too large.
+ * Beyond dense size: gate by gate (`gate-by-gate.ts`, a proof of equality), then random product inputs (`probes.ts`, a proof of
+ * difference, evidence of equality), else `undecided`.
+ * Fails: InputError for circuits that cannot be matched.
  */
 import type { BitExpression, Circuit } from '../circuit/circuit.ts';
 import { contractOf, isProgram } from '../circuit/contract.ts';
@@ -24,6 +26,7 @@ import {
 import { compareGateByGate, type GateByGate } from './gate-by-gate.ts';
 import { bitPairs, type Observation, observation } from './observation.ts';
 import { type Observed, observe } from './observed.ts';
+import { PROBES, probeOf } from './probes.ts';
 import { findRelabelling } from './relabel.ts';
 import { isAnnotated, type Unfolded, unfold } from './unfold.ts';
 import { findWitness } from './witness.ts';
@@ -64,33 +67,104 @@ export function compareCircuits(
     rewritten: rewritten.name,
   } as const;
   checkWires(original, rewritten, contract);
-  let a: Unfolded;
-  let b: Unfolded;
+  const question = { original, rewritten, contract, tolerance, relabel, seed };
+  return { ...head, ...answerTo(question) };
+}
+
+type Question = {
+  original: Circuit;
+  rewritten: Circuit;
+  contract: Contract;
+  tolerance: number;
+  relabel: boolean;
+  seed: number;
+};
+
+/** The first road that leads to an answer: dense; then proofs of equality at any size; then probes. */
+function answerTo(question: Question): Answer {
   try {
-    a = unfold(original, contract);
-    b = unfold(rewritten, contract);
+    return denseAnswer(question);
   } catch (error) {
     if (!(error instanceof InputError) || error.code !== 'too-large') throw error;
-    const proof = compareGateByGate(original, rewritten, contract, bitPairs(original, rewritten));
-    if (proof && proof.hilbertSchmidt <= tolerance)
-      return { ...head, ...provedGateByGate(proof, original) };
-    return {
-      ...head,
-      verdict: 'undecided',
-      distance: null,
-      phase: null,
-      method: 'none',
-      proof: false,
-      witness: null,
-      relabelling: null,
-      notes: [error.problems[0]!.message],
-      unfoldedWires: 0,
-    };
+    return (
+      gateByGateAnswer(question) ?? probeAnswer(question) ?? undecided(error.problems[0]!.message)
+    );
   }
+}
+
+function undecided(why: string): Answer {
+  return {
+    verdict: 'undecided',
+    distance: null,
+    phase: null,
+    method: 'none',
+    proof: false,
+    witness: null,
+    relabelling: null,
+    notes: [why],
+    unfoldedWires: 0,
+  };
+}
+
+function gateByGateAnswer({ original, rewritten, contract, tolerance }: Question): Answer | null {
+  const proof = compareGateByGate(original, rewritten, contract, bitPairs(original, rewritten));
+  return proof && proof.hilbertSchmidt <= tolerance ? provedGateByGate(proof, original) : null;
+}
+
+/** A difference on a random product input is a counterexample; none on several is evidence. */
+function probeAnswer(question: Question): Answer | null {
+  const { original, rewritten, contract, seed } = question;
+  if (!contract.inputs.includes('any')) return null;
+  let worst: Answer | null = null;
+  try {
+    for (let k = 0; k < PROBES; k++) {
+      const probe = probeOf(original, rewritten, contract, seed, k);
+      const answer = denseAnswer({ ...question, ...probe });
+      if (answer.verdict === 'different') {
+        const { witness } = answer;
+        return {
+          ...answer,
+          method: 'probes',
+          phase: null,
+          witness: witness && { ...witness, input: probe.input },
+          notes: ['a random product input tells the two apart; the distance is that on this input'],
+        };
+      }
+      const size = (one: Answer | null): number => one?.distance?.hilbertSchmidt ?? -1;
+      if (size(answer) > size(worst)) worst = answer;
+    }
+  } catch (error) {
+    // one input at a time is too large as well: no probes
+    if (error instanceof InputError && error.code === 'too-large') return null;
+    throw error;
+  }
+  return (
+    worst && {
+      ...worst,
+      method: 'probes',
+      proof: false,
+      phase: null,
+      notes: [
+        `the same on ${PROBES} random product inputs, which is no proof: a difference on fewer than about 1 in ${PROBES} such inputs, or below ${question.tolerance} on each, would have been missed`,
+      ],
+    }
+  );
+}
+
+function denseAnswer({
+  original,
+  rewritten,
+  contract,
+  tolerance,
+  relabel,
+  seed,
+}: Question): Answer {
+  const a = unfold(original, contract);
+  const b = unfold(rewritten, contract);
   const plan = observation(original, rewritten, contract);
   const looked = plan.of(a, 'original');
   if (isManyBits(looked, plan.kept.length, relabel)) {
-    return { ...head, ...compareBits(a, b, looked.bits, plan, tolerance) };
+    return compareBits(a, b, looked.bits, plan, tolerance);
   }
   const left = observe(a, looked, original.name);
   const relabelling = relabel ? findRelabelling(a, b, plan, left, rewritten.name, seed) : null;
@@ -103,9 +177,7 @@ export function compareCircuits(
     notes.push('the difference is above rounding, but within the tolerance');
   }
   const worstCase = worstCaseOf(left, right, plan, notes);
-  const witness = isSame ? null : findWitness(left, right, plan.names, seed);
   return {
-    ...head,
     verdict: isSame ? 'same' : 'different',
     distance: {
       hilbertSchmidt,
@@ -117,7 +189,7 @@ export function compareCircuits(
     phase,
     method: 'dense',
     proof: true,
-    witness,
+    witness: isSame ? null : findWitness(left, right, plan.names, seed),
     relabelling,
     notes,
     unfoldedWires: b.unfoldedWires,

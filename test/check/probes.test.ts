@@ -1,0 +1,64 @@
+import { expect, test } from 'vitest';
+import { compareCircuits } from '../../src/check/compare.ts';
+import { probeOf } from '../../src/check/probes.ts';
+import { type Circuit, emptyCircuit, type GateOperation, gate } from '../../src/circuit/circuit.ts';
+import { contractOf } from '../../src/circuit/contract.ts';
+import { random } from '../../src/numeric/random.ts';
+
+/** Gates that the gate-by-gate road cannot undo: Toffolis and turned controls in many places. */
+function block(wires: number, gates: number, seed: number): Circuit {
+  const draw = random(seed, 'probes');
+  const pick = (k: number): number => Math.min(k - 1, Math.floor(k * draw()));
+  const operations: GateOperation[] = [];
+  for (let k = 0; k < gates; k++) {
+    const a = pick(wires);
+    const b = (a + 1 + pick(wires - 1)) % wires;
+    operations.push(gate('u3', [a], draw(), draw(), draw()), gate('cx', [a, b]));
+  }
+  return { ...emptyCircuit(wires), operations };
+}
+
+/** The same unitary with every CX turned round by four H, in one piece that no local look undoes. */
+function turned({ operations, ...rest }: Circuit): Circuit {
+  return {
+    ...rest,
+    operations: operations.flatMap((operation) => {
+      if (operation.kind !== 'gate' || operation.name !== 'cx') return [operation];
+      const [a, b] = operation.wires as [number, number];
+      return [gate('h', [a]), gate('h', [b]), gate('cx', [b, a]), gate('h', [a]), gate('h', [b])];
+    }),
+  };
+}
+
+test('14 wires: the same on every probe, and said to be no proof', () => {
+  const original = block(14, 40, 1);
+  const report = compareCircuits(original, turned(original));
+  expect(report).toMatchObject({ verdict: 'same', proof: false, method: 'probes' });
+  expect(report.notes.join()).toContain('no proof');
+  expect(report.distance!.hilbertSchmidt).toBeLessThan(1e-24);
+});
+
+test('14 wires: one angle off by 1e-3 is a counterexample with its input', () => {
+  const original = block(14, 40, 2);
+  const other = turned(original);
+  const operations = other.operations.map((operation, k) =>
+    k === 60 && operation.kind === 'gate'
+      ? { ...operation, ...gate('rx', [operation.wires[0]!], 1e-3) }
+      : operation,
+  );
+  const spoiled = { ...other, operations: [...operations, gate('rx', [3], 1e-3)] };
+  const report = compareCircuits(original, spoiled);
+  expect(report).toMatchObject({ verdict: 'different', proof: true, method: 'probes' });
+  expect(report.witness!.input).toMatch(/q\[0\]=ry\(/);
+  expect(report.witness!.probabilityOriginal).not.toBe(report.witness!.probabilityRewritten);
+});
+
+test('the input is prepared where it enters', () => {
+  const original = block(3, 4, 3);
+  const probe = probeOf(original, original, contractOf(original), 7, 0);
+  expect(probe.contract.inputs).toEqual(['zero', 'zero', 'zero']);
+  expect(probe.original.operations).toHaveLength(original.operations.length + 6);
+  expect(
+    compareCircuits(probe.original, probe.rewritten, { contract: { inputs: 'zero' } }).verdict,
+  ).toBe('same');
+});
