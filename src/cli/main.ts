@@ -6,11 +6,20 @@
 import { fileURLToPath } from 'node:url';
 import { Command, CommanderError, Option } from 'commander';
 import pc from 'picocolors';
-import type { CommandRequest, CommandResult } from '../commands.ts';
+import {
+  type Certificate,
+  certificateOf,
+  checkHashes,
+  disagreements,
+  readCertificate,
+} from '../check/certificate.ts';
+import { COMPARE_TOLERANCE } from '../check/compare.ts';
+import type { CommandRequest, CommandResult, CommonOptions } from '../commands.ts';
+import type { InputRule, OutputRule } from '../contract.ts';
 import { formatProblem, InputError, nearestWord } from '../input-error.ts';
 import { type Captioned, pictureSheet } from '../write/picture-sheet.ts';
 import { reportHtml } from '../write/report-html.ts';
-import { checkWritable, sourceOf, writeWhole } from './files.ts';
+import { checkWritable, readText, sourceOf, writeWhole } from './files.ts';
 import {
   commonOptions,
   defaultWorkers,
@@ -88,21 +97,16 @@ function program(finish: (code: number) => void): Command {
   shared(
     root
       .command('compare')
-      .argument('<original>', 'circuit or unitary')
-      .argument('<rewritten>', 'circuit or unitary'),
+      .argument('[original]', 'circuit or unitary')
+      .argument('[rewritten]', 'circuit or unitary'),
   )
     .description('same or not, how far apart, and an input that shows it')
     .option('--relabel', 'allow a permutation of the outputs')
+    .option('--certificate <file>', 'write what was compared and found (.json)')
+    .option('--recheck <certificate>', 'repeat a comparison and hold it to its certificate')
     .addHelpText('after', '\nExample: wiregauge compare before.qasm after.qasm')
-    .action(async (original: string, rewritten: string, words: Words) => {
-      finish(
-        await perform(words, () => ({
-          command: 'compare',
-          original: sourceOf(original),
-          rewritten: sourceOf(rewritten),
-          options: { ...commonOptions(words), ...(words.relabel ? { relabel: true } : {}) },
-        })),
-      );
+    .action(async (original: string | undefined, rewritten: string | undefined, words: Words) => {
+      finish(await compareFiles(original, rewritten, words));
     });
   shared(root.command('build').argument('<target>', 'unitary (.mtx or expression) or circuit'))
     .description('native gates for a unitary, with few entanglers')
@@ -158,9 +162,66 @@ async function openDesk(port: number): Promise<number> {
   return 0;
 }
 
-async function perform(words: Words, request: () => CommandRequest): Promise<number> {
+async function compareFiles(
+  original: string | undefined,
+  rewritten: string | undefined,
+  words: Words,
+): Promise<number> {
+  const known = words.recheck ? readCertificate(readText(words.recheck), words.recheck) : undefined;
+  const first = original ?? known?.original.name;
+  const second = rewritten ?? known?.rewritten.name;
+  if (first === undefined || second === undefined) {
+    throw new InputError({
+      code: 'missing-argument',
+      message: 'missing argument: two circuits to compare, or --recheck with a certificate',
+    });
+  }
+  const texts = { original: sourceOf(first), rewritten: sourceOf(second) };
+  if (known) checkHashes(known, texts);
+  const asked = known
+    ? askedBy(known)
+    : { ...commonOptions(words), relabel: words.relabel === true };
+  return perform(
+    words,
+    () => ({ command: 'compare', ...texts, options: asked }),
+    ({ report }) => {
+      if (report.schema !== 'wiregauge/compare@1') return null;
+      if (words.certificate) {
+        const tolerance = asked.tolerance ?? COMPARE_TOLERANCE;
+        const made = certificateOf(report, texts, { ...asked, tolerance }, VERSION);
+        writeWhole(words.certificate, `${JSON.stringify(made, null, 2)}\n`);
+      }
+      if (!known) return null;
+      const wrong = disagreements(known, report);
+      const held = wrong.length === 0 ? 'the certificate holds' : `the certificate does not hold: ${wrong.join('; ')}`; // biome-ignore format: one sentence
+      report.notes.push(held);
+      return wrong.length === 0 ? 0 : 1;
+    },
+  );
+}
+
+function askedBy({ asked }: Certificate): CommonOptions & { relabel?: boolean } {
+  const { inputs, outputs, inputOf, outputOf, relabel, tolerance, seed } = asked;
+  return {
+    relabel,
+    tolerance,
+    seed,
+    ...(inputs ? { inputs } : {}),
+    ...(outputs ? { outputs } : {}),
+    // the rules were checked when the certificate was made
+    ...(inputOf ? { inputOf: new Map(inputOf as [number, InputRule][]) } : {}),
+    ...(outputOf ? { outputOf: new Map(outputOf as [number, OutputRule][]) } : {}),
+  };
+}
+
+async function perform(
+  words: Words,
+  request: () => CommandRequest,
+  /** Looks at the result before it is shown; may decide the exit code. */
+  inspect: (result: CommandResult) => number | null = () => null,
+): Promise<number> {
   const started = performance.now();
-  for (const file of [words.out, words.report, words.picture])
+  for (const file of [words.out, words.report, words.picture, words.certificate])
     if (file) checkWritable(file, words.force === true);
   if (words.report && !/\.(json|html)$/.test(words.report)) {
     throw new InputError({ code: 'bad-report', message: `expected a .json or .html file for --report, got ${words.report}` }); // biome-ignore format: one message
@@ -181,12 +242,14 @@ async function perform(words: Words, request: () => CommandRequest): Promise<num
     return isInterrupted ? 130 : 3;
   }
   result.report.seconds = Math.round(performance.now() - started) / 1000;
+  const decided = inspect(result);
   const isDrawn = words.picture !== undefined || words.report?.endsWith('.html') === true;
   const pictures = isDrawn ? await picturesOf(asked, result) : [];
   if (words.picture)
     writeWhole(words.picture, pictureSheet(pictures, `wiregauge ${asked.command}`));
   deliver(result, words, asked.command, pictures);
   if (isInterrupted) return 130;
+  if (decided !== null) return decided;
   return isTimedOut && result.exitCode !== 0 ? 3 : result.exitCode;
 }
 

@@ -21,6 +21,8 @@ export type Words = {
   out?: string;
   report?: string;
   picture?: string;
+  certificate?: string;
+  recheck?: string;
   json?: boolean;
   quiet?: boolean;
   force?: boolean;

@@ -139,6 +139,18 @@ describe('answers', () => {
     expect(report.witness.probabilityOriginal).not.toBe(report.witness.probabilityRewritten);
   });
 
+  test('a certificate can be rechecked, and notices another text', () => {
+    const [a, b] = [file('a.qasm', readFileSync(example('relay.qasm'), 'utf8')), file('b.qasm', readFileSync(example('relay-rewritten.qasm'), 'utf8'))]; // biome-ignore format: two files
+    expect(wiregauge('compare', a, b, '--certificate', 'c.json').status).toBe(0);
+    const again = wiregauge('compare', '--recheck', 'c.json');
+    expect(again.status).toBe(0);
+    expect(again.stdout).toContain('the certificate holds');
+    file('b.qasm', readFileSync(example('relay-off.qasm'), 'utf8'));
+    const changed = wiregauge('compare', '--recheck', 'c.json');
+    expect(changed.status).toBe(2);
+    expect(changed.stderr).toContain('expected the rewritten text with hash');
+  });
+
   test('build: an expression, a report as a page', () => {
     const page = join(folder, 'swap.html');
     const { status, stdout } = wiregauge(
@@ -248,7 +260,8 @@ describe('bad input: exit 2, one message at the right place, no trace', () => {
     [['narrow', 'x', '--out', 'no/such/folder.qasm'], 'missing folder: no/such'],
     [['survey', 'x', '--report', 'report.txt'], 'expected a .json or .html file for --report'],
     [['compare', 'cx', 'x'], 'expected 2 wires'],
-    [['compare', 'x'], 'missing required argument'],
+    [['compare', 'x'], 'missing argument: two circuits to compare'],
+    [['compare', '--recheck', 'nowhere.json'], 'missing file: nowhere.json'],
     [['survey', 'x', '--input-of', '0=maybe'], 'expected WIRE=any|zero, got 0=maybe'],
   ])('%j', (words, message) => {
     const { status, stderr } = wiregauge(...words);
