@@ -112,6 +112,8 @@ export type CompareReport = Head<'compare'> & {
   method: string;
   proof: boolean;
   witness: Witness | null;
+  /** When different: the lines of both texts where the first gates without a counterpart stand. */
+  where?: { original: number | null; rewritten: number | null } | null;
   /** relabelling[k] = output wire of the rewritten circuit that carries output k; null when not asked for. */
   relabelling: number[] | null;
 };

@@ -23,7 +23,7 @@ import {
   distributionDistance,
   likeliestDifference,
 } from './distribution.ts';
-import { compareGateByGate, type GateByGate } from './gate-by-gate.ts';
+import { compareGateByGate, firstUnmatched, type GateByGate } from './gate-by-gate.ts';
 import { bitPairs, type Observation, observation } from './observation.ts';
 import { type Observed, observe } from './observed.ts';
 import { PROBES, probeOf } from './probes.ts';
@@ -68,7 +68,9 @@ export function compareCircuits(
   } as const;
   checkWires(original, rewritten, contract);
   const question = { original, rewritten, contract, tolerance, relabel, seed };
-  return { ...head, ...answerTo(question) };
+  const answer = answerTo(question);
+  if (answer.verdict !== 'different') return { ...head, ...answer };
+  return { ...head, ...answer, where: firstUnmatched(original, rewritten, contract) };
 }
 
 type Question = {

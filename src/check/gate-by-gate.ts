@@ -20,7 +20,11 @@ import { isAnnotated } from './unfold.ts';
 
 /** Largest angle at which two gates count as the same one. */
 const SAME_ANGLE = 1e-6;
+/** The same, where the question is where two circuits begin to differ. */
+const EQUAL_ANGLE = 1e-11;
 const REST_LINES_MAX = 8;
+/** With more than this left over, nothing further is looked for. */
+const REST_GATES_MAX = 64;
 const COMMUTE_LINES_MAX = 5;
 
 export type GateByGate = {
@@ -50,7 +54,35 @@ export function compareGateByGate(
   const ends = endsOf(a, contract);
   const left = visible(a.gates, contract, ends);
   const right = visible(b.gates, contract, ends);
-  return cancel(left, right);
+  const { angle, pairs, restLeft, restRight } = cancel(left, right);
+  const rest = restAngle(restLeft, restRight);
+  if (rest === null) return null;
+  const total = Math.min(Math.PI / 2, angle + rest);
+  return {
+    hilbertSchmidt: 2 * Math.sin(total / 2) ** 2,
+    cancelled: pairs,
+    rest: restLeft.length + restRight.length,
+  };
+}
+
+/** The lines of both texts where the first gates without a counterpart stand; null where there is none or it is not known. */
+export function firstUnmatched(
+  original: Circuit,
+  rewritten: Circuit,
+  contract: Contract,
+): { original: number | null; rewritten: number | null } | null {
+  const n = contract.inputs.length;
+  const a = linesOf(original, n, isAnnotated(original));
+  const b = linesOf(rewritten, n, isAnnotated(rewritten));
+  if (!a || !b) return null;
+  const ends = endsOf(a, contract);
+  const { restLeft, restRight } = cancel(
+    visible(a.gates, contract, ends),
+    visible(b.gates, contract, ends),
+    EQUAL_ANGLE,
+  );
+  const first = (gates: readonly LineGate[]): number | null => gates.find(({ at }) => at !== undefined)?.at ?? null; // biome-ignore format: one choice
+  return { original: first(restLeft), rewritten: first(restRight) };
 }
 
 type Ends = { isMeasured: Set<number>; isDropped: Set<number> };
@@ -112,7 +144,7 @@ function withKnownInputs(gates: readonly LineGate[], { inputs }: Contract): Line
 }
 
 /** The block of a gate for one value of a line on which it is a control. */
-function restricted({ lines, matrix }: LineGate, place: number, value: 0 | 1): LineGate {
+function restricted({ lines, matrix, at }: LineGate, place: number, value: 0 | 1): LineGate {
   const k = lines.length;
   const d = 2 ** (k - 1);
   const bit = k - 1 - place;
@@ -126,10 +158,11 @@ function restricted({ lines, matrix }: LineGate, place: number, value: 0 | 1): L
       out[d * d + r * d + c] = matrix[4 * d * d + from]!;
     }
   }
-  return lineGate(
-    lines.filter((_, at) => at !== place),
+  const here = lineGate(
+    lines.filter((_, k) => k !== place),
     out,
   );
+  return at === undefined ? here : { ...here, at };
 }
 
 /** The identity up to a phase. */
@@ -178,7 +211,18 @@ function isMonomial({ lines, matrix }: LineGate): boolean {
   return true;
 }
 
-function cancel(left: readonly LineGate[], right: readonly LineGate[]): GateByGate | null {
+type Cancelled = {
+  angle: number;
+  pairs: number;
+  restLeft: LineGate[];
+  restRight: LineGate[];
+};
+
+function cancel(
+  left: readonly LineGate[],
+  right: readonly LineGate[],
+  sameAngle = SAME_ANGLE,
+): Cancelled {
   const isTaken = new Uint8Array(right.length);
   const onLine = new Map<number, number[]>();
   right.forEach(({ lines }, k) => {
@@ -189,15 +233,15 @@ function cancel(left: readonly LineGate[], right: readonly LineGate[]): GateByGa
     }
   });
   let angle = 0;
-  let cancelled = 0;
+  let pairs = 0;
   const restLeft: LineGate[] = [];
   for (const gate of left) {
     // what waits of the original must be passed as well
-    const isFree = restLeft.every((other) => commute(other, gate));
-    const found = isFree ? partnersOf(gate, right, onLine) : null;
+    const isFree =
+      restLeft.length <= REST_GATES_MAX && restLeft.every((other) => commute(other, gate));
+    const found = isFree ? partnersOf(gate, right, onLine, sameAngle) : null;
     if (!found) {
       restLeft.push(gate);
-      if (restLeft.length > 64) return null;
       continue;
     }
     for (const index of found.taken) {
@@ -208,17 +252,10 @@ function cancel(left: readonly LineGate[], right: readonly LineGate[]): GateByGa
       }
     }
     angle += found.angle;
-    cancelled++;
+    pairs++;
   }
   const restRight = right.filter((_, k) => !isTaken[k]);
-  const rest = restAngle(restLeft, restRight);
-  if (rest === null) return null;
-  const total = Math.min(Math.PI / 2, angle + rest);
-  return {
-    hilbertSchmidt: 2 * Math.sin(total / 2) ** 2,
-    cancelled,
-    rest: restLeft.length + restRight.length,
-  };
+  return { angle, pairs, restLeft, restRight };
 }
 
 /** Gates on the same lines whose product may stand for one: a condition and its opposite, for example. */
@@ -232,6 +269,7 @@ function partnersOf(
   gate: LineGate,
   right: readonly LineGate[],
   onLine: ReadonlyMap<number, number[]>,
+  sameAngle: number,
 ): { taken: number[]; angle: number } | null {
   const taken: number[] = [];
   let product: Float64Array | null = null;
@@ -245,13 +283,13 @@ function partnersOf(
       ),
     );
     if (!canMove) continue;
-    const alone = angleBetween(gate.matrix, other.matrix);
+    const alone = angleBetween(gate.matrix, other.matrix, sameAngle);
     const isFirst = taken.every((before) => commute(other, right[before]!));
     if (alone !== null && isFirst) return { taken: [index], angle: alone };
     if (taken.length >= PRODUCT_MAX) continue;
     product = product ? mul(other.matrix, product, d) : other.matrix;
     taken.push(index);
-    const angle = angleBetween(gate.matrix, product);
+    const angle = angleBetween(gate.matrix, product, sameAngle);
     if (angle !== null) return { taken, angle };
   }
   return null;
@@ -262,9 +300,9 @@ function isOnSameLines(a: LineGate, b: LineGate): boolean {
 }
 
 /** The angle between two unitaries when it is tiny; null for different ones. */
-function angleBetween(a: Float64Array, b: Float64Array): number | null {
+function angleBetween(a: Float64Array, b: Float64Array, sameAngle: number): number | null {
   const angle = distanceAngle(hilbertSchmidtDistance(a, b).distance);
-  return angle <= SAME_ANGLE ? angle : null;
+  return angle <= sameAngle ? angle : null;
 }
 
 /** Whether two gates commute for certain: apart, both controls on every common line, or by their matrices. */

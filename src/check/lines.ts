@@ -22,6 +22,8 @@ export type LineGate = {
   matrix: Float64Array;
   /** For each line: the gate is block-diagonal in its Z basis, so that it is at most a control there. */
   isControl: readonly boolean[];
+  /** Line of the text it comes from. */
+  at?: number;
 };
 
 export type Lines = {
@@ -143,7 +145,7 @@ class LineWalk {
     const matrix = read
       ? conditioned(gateMatrix(operation), lines.length, controls, read)
       : gateMatrix(operation);
-    const gate = lineGate([...controls, ...lines], matrix);
+    const gate = { ...lineGate([...controls, ...lines], matrix), ...(operation.line === undefined ? {} : { at: operation.line }) }; // biome-ignore format: one gate
     // a measured line may only be read: a control, never a target
     const isFine = gate.lines.every((line, k) => !this.measured.has(line) || gate.isControl[k]);
     if (isFine) this.gates.push(gate);

@@ -211,6 +211,10 @@ function showCompare(report: CompareReport): string {
       `  probability of ${witness.output}: ${witness.probabilityOriginal.toPrecision(12)} in the original, ${witness.probabilityRewritten.toPrecision(12)} in the rewritten circuit`,
     );
   }
+  if (report.where && (report.where.original !== null || report.where.rewritten !== null)) {
+    const place = (line: number | null): string => (line === null ? 'its end' : `line ${line}`);
+    lines.push(`first gates without a counterpart: ${place(report.where.original)} of the original, ${place(report.where.rewritten)} of the rewritten circuit`); // biome-ignore format: one sentence
+  }
   if (relabelling) lines.push(`outputs relabelled: ${relabelling.join(' ')}`);
   return [...lines, ...noteLines(report.notes), ''].join('\n');
 }

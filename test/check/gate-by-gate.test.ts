@@ -134,6 +134,25 @@ describe('what is the same is proved', () => {
   });
 });
 
+test('where two circuits begin to differ: the lines of the first gates without a counterpart', () => {
+  const lines = ['OPENQASM 3;', 'include "stdgates.inc";', 'qubit[10] q;'];
+  const draw = random(13, 'where');
+  for (let k = 0; k < 150; k++) {
+    const a = whole(draw, 10);
+    lines.push(`ry(${draw()}) q[${a}];`, `cx q[${a}], q[${(a + 1 + whole(draw, 9)) % 10}];`);
+  }
+  const at = 101;
+  const off = lines.map((line, k) => (k === at ? line.replace('ry(', 'ry(0.000001 + ') : line));
+  const read = (text: string[]): Circuit => readCircuit(text.join('\n'), 'x').circuit;
+  // D = 1 - cos(5e-7) = 1.25e-13, to three digits
+  const report = compareCircuits(read(lines), read(off), { tolerance: 1e-16 });
+  const line = lines[at]!.startsWith('ry') ? at + 1 : at;
+  if (lines[at]!.startsWith('ry')) {
+    expect(report.distance!.hilbertSchmidt / 1.25e-13).toBeCloseTo(1, 3);
+    expect(report.where).toEqual({ original: line, rewritten: line });
+  } else throw new Error('the line to spoil must be a rotation');
+});
+
 describe('nothing is proved that is wrong', () => {
   test('small circuits: whenever this road says same, the dense one does', () => {
     let proofs = 0;
