@@ -16,6 +16,7 @@ import { type Contract, type ContractOptions, contractName } from '../contract.t
 import { InputError } from '../input-error.ts';
 import { distanceAngle, processInfidelity } from '../numeric/distance.ts';
 import type { CompareReport } from '../reports.ts';
+import { isAnnotated } from './annotations.ts';
 import { channelDistance } from './channel-distance.ts';
 import {
   bitDistribution,
@@ -28,7 +29,7 @@ import { bitPairs, type Observation, observation } from './observation.ts';
 import { type Observed, observe } from './observed.ts';
 import { PROBES, probeOf } from './probes.ts';
 import { findRelabelling } from './relabel.ts';
-import { isAnnotated, type Unfolded, unfold } from './unfold.ts';
+import { type Unfolded, unfold } from './unfold.ts';
 import { findWitness } from './witness.ts';
 import { WORST_CASE_ROWS_MAX, worstCaseDistance } from './worst-case.ts';
 

@@ -15,8 +15,8 @@ import { applyMatrixInto } from '../circuit/unitary.ts';
 import type { Contract } from '../contract.ts';
 import { identity, mul } from '../numeric/complex-matrix.ts';
 import { distanceAngle, hilbertSchmidtDistance } from '../numeric/distance.ts';
+import { isAnnotated } from './annotations.ts';
 import { type LineGate, type Lines, lineGate, linesOf } from './lines.ts';
-import { isAnnotated } from './unfold.ts';
 
 /** Largest angle at which two gates count as the same one. */
 const SAME_ANGLE = 1e-6;

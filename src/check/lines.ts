@@ -13,9 +13,11 @@ import {
   type Circuit,
   evaluateBits,
   type GateOperation,
+  type Operation,
 } from '../circuit/circuit.ts';
 import { gateMatrix } from '../circuit/unitary.ts';
 import { identity } from '../numeric/complex-matrix.ts';
+import { entering, leaving } from './annotations.ts';
 
 export type LineGate = {
   lines: readonly number[];
@@ -37,8 +39,6 @@ export type Lines = {
 };
 
 const GATE_LINES_MAX = 6;
-const ENTERS = /^wiregauge\.enters\s+(\d+)\s*$/;
-const LEAVES = /^wiregauge\.leaves\s+(\d+)\s*$/;
 
 export function linesOf(circuit: Circuit, outputs: number, isAnnotated: boolean): Lines | null {
   const run = new LineWalk(circuit, outputs, isAnnotated);
@@ -82,7 +82,7 @@ class LineWalk {
       case 'measure': {
         const line = this.lineOfWire[operation.wire]!;
         if (operation.condition || line < 0) return false;
-        if (!this.leave(operation.annotations, line)) return false;
+        if (!this.leave(operation, line)) return false;
         if (operation.bit >= 0) {
           this.bits[operation.bit] = { kind: 'bit', bit: line };
           this.lineOfBit[operation.bit] = line;
@@ -93,8 +93,8 @@ class LineWalk {
       case 'reset': {
         const line = this.lineOfWire[operation.wire]!;
         if (operation.condition || !this.isAnnotated) return false;
-        if (line >= 0 && !this.leave(operation.annotations, line)) return false;
-        const input = numberIn(operation.annotations, ENTERS);
+        if (line >= 0 && !this.leave(operation, line)) return false;
+        const input = entering(operation);
         this.lineOfWire[operation.wire] = input;
         if (input < 0 || this.entered.has(input)) return false;
         this.entered.add(input);
@@ -118,8 +118,8 @@ class LineWalk {
   }
 
   /** False when the output left before, or is none of the original's. */
-  private leave(annotations: readonly string[] | undefined, line: number): boolean {
-    const output = numberIn(annotations, LEAVES);
+  private leave(operation: Operation, line: number): boolean {
+    const output = leaving(operation);
     if (output < 0) return true;
     if (output >= this.lineOfOutput.length || this.lineOfOutput[output]! >= 0) return false;
     this.lineOfOutput[output] = line;
@@ -177,14 +177,6 @@ class LineWalk {
 
 const CX = new Float64Array(32);
 for (const at of [0, 5, 11, 14]) CX[at] = 1;
-
-function numberIn(annotations: readonly string[] | undefined, pattern: RegExp): number {
-  for (const line of annotations ?? []) {
-    const match = pattern.exec(line);
-    if (match) return Number(match[1]);
-  }
-  return -1;
-}
 
 /** The matrix on controls and targets: the gate where the condition holds, else nothing. */
 function conditioned(

@@ -10,6 +10,7 @@
 import { type Circuit, gate, type Operation, wireName } from '../circuit/circuit.ts';
 import type { Contract } from '../contract.ts';
 import { random } from '../numeric/random.ts';
+import { entering, isAnnotated } from './annotations.ts';
 
 export const PROBES = 8;
 
@@ -21,8 +22,6 @@ export type Probe = {
   /** The input in words: angles of Ry, then Rz, on each wire. */
   input: string;
 };
-
-const ENTERS = /^wiregauge\.enters\s+(\d+)\s*$/;
 
 /** Both circuits with one random product input prepared in front. */
 export function probeOf(
@@ -54,14 +53,11 @@ function prepared(circuit: Circuit, angles: readonly ([number, number] | null)[]
     const pair = angles[input];
     return pair ? [gate('ry', [wire], pair[0]), gate('rz', [wire], pair[1])] : [];
   };
-  const isAnnotated = circuit.operations.some(({ annotations }) =>
-    annotations?.some((line) => ENTERS.test(line)),
-  );
-  const first = isAnnotated ? [] : angles.flatMap((_, wire) => (wire < circuit.wires ? on(wire, wire) : [])); // biome-ignore format: one choice
+  const first = isAnnotated(circuit) ? [] : angles.flatMap((_, wire) => (wire < circuit.wires ? on(wire, wire) : [])); // biome-ignore format: one choice
   const operations = circuit.operations.flatMap((operation): Operation[] => {
     if (operation.kind !== 'reset') return [operation];
-    const input = operation.annotations?.flatMap((line) => ENTERS.exec(line)?.[1] ?? [])[0];
-    return input === undefined ? [operation] : [operation, ...on(operation.wire, Number(input))];
+    const input = entering(operation);
+    return input < 0 ? [operation] : [operation, ...on(operation.wire, input)];
   });
   return { ...circuit, operations: [...first, ...operations] };
 }

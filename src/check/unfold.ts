@@ -25,12 +25,11 @@ import { gateTable } from '../circuit/gates.ts';
 import { applyMatrixInto, baseMatrix } from '../circuit/unitary.ts';
 import type { Contract } from '../contract.ts';
 import { InputError } from '../input-error.ts';
+import { entering, isAnnotated, leaving } from './annotations.ts';
 
 /** 2^24 complex numbers, 256 MiB, for each of the two circuits. */
 export const UNFOLDED_BITS_MAX = 24;
 
-const ENTERS = /^wiregauge\.enters\s+(\d+)\s*$/;
-const LEAVES = /^wiregauge\.leaves\s+(\d+)\s*$/;
 const PAULI_X = new Float64Array([0, 1, 1, 0, 0, 0, 0, 0]);
 const SWAP = new Float64Array(32);
 for (const at of [0, 6, 9, 15]) SWAP[at] = 1;
@@ -47,21 +46,6 @@ export type Unfolded = {
   /** Number of qubits that a circuit without reuse would have had. */
   unfoldedWires: number;
 };
-
-export function isAnnotated(circuit: Circuit): boolean {
-  return circuit.operations.some(({ annotations }) =>
-    annotations?.some((line) => ENTERS.test(line) || LEAVES.test(line)),
-  );
-}
-
-/** The number an annotation of this kind carries, or -1. */
-function annotated(operation: Operation, pattern: RegExp): number {
-  for (const line of operation.annotations ?? []) {
-    const match = pattern.exec(line);
-    if (match) return Number(match[1]);
-  }
-  return -1;
-}
 
 /** At least this many bits of state index: known before anything is evolved. */
 export function unfoldedBitsLeast(circuit: Circuit, contract: Contract): number {
@@ -178,14 +162,14 @@ class Unfolding {
         this.leave(operation, this.measure(operation.wire, operation.bit, index, condition));
         return;
       case 'reset':
-        if (annotated(operation, LEAVES) >= 0) this.leave(operation, this.axisFor(operation.wire));
+        if (leaving(operation) >= 0) this.leave(operation, this.axisFor(operation.wire));
         this.reset(operation, condition);
         return;
     }
   }
 
   private leave(operation: Operation, axis: number): void {
-    const output = annotated(operation, LEAVES);
+    const output = leaving(operation);
     if (output < 0) return;
     if (output >= this.outputAxis.length || this.outputAxis[output]! >= 0) {
       throw this.problem(operation, `expected each output to leave once, got leaves ${output}`);
@@ -207,7 +191,7 @@ class Unfolding {
   private reset(operation: Operation, condition: BitExpression | undefined): void {
     if (operation.kind !== 'reset') return;
     const { wire } = operation;
-    const input = annotated(operation, ENTERS);
+    const input = entering(operation);
     if (condition) {
       if (input >= 0) throw this.problem(operation, 'expected no condition where an input enters');
       const axis = this.axisFor(wire);
