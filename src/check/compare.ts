@@ -6,7 +6,8 @@
  * out. The distance is that of `channel-distance.ts`; it is a proof up to its error bar.
  * Matching: wires by number, or by the annotations of a narrowed circuit; bits by name, else by position. Extra wires of
  * the rewritten circuit start in |0> and are dropped.
- * Beyond dense size: gate by gate (`gate-by-gate.ts`, a proof of equality), then random product inputs (`probes.ts`, a proof of
+ * Beyond dense size: gate by gate (`gate-by-gate.ts`, a proof of equality), then tableaus for Clifford circuits (`tableau.ts`, a
+ * proof both ways), then random product inputs (`probes.ts`, a proof of
  * difference, evidence of equality), else `undecided`.
  * Fails: InputError for circuits that cannot be matched.
  */
@@ -29,6 +30,7 @@ import { bitPairs, type Observation, observation } from './observation.ts';
 import { type Observed, observe } from './observed.ts';
 import { PROBES, probeOf } from './probes.ts';
 import { findRelabelling } from './relabel.ts';
+import { compareTableaus } from './tableau.ts';
 import { type Unfolded, unfold } from './unfold.ts';
 import { findWitness } from './witness.ts';
 import { WORST_CASE_ROWS_MAX, worstCaseDistance } from './worst-case.ts';
@@ -90,7 +92,10 @@ function answerTo(question: Question): Answer {
   } catch (error) {
     if (!(error instanceof InputError) || error.code !== 'too-large') throw error;
     return (
-      gateByGateAnswer(question) ?? probeAnswer(question) ?? undecided(error.problems[0]!.message)
+      gateByGateAnswer(question) ??
+      tableauAnswer(question) ??
+      probeAnswer(question) ??
+      undecided(error.problems[0]!.message)
     );
   }
 }
@@ -112,6 +117,23 @@ function undecided(why: string): Answer {
 function gateByGateAnswer({ original, rewritten, contract, tolerance }: Question): Answer | null {
   const proof = compareGateByGate(original, rewritten, contract, bitPairs(original, rewritten));
   return proof && proof.hilbertSchmidt <= tolerance ? provedGateByGate(proof, original) : null;
+}
+
+/** Clifford circuits of any size, proved both ways. */
+function tableauAnswer({ original, rewritten, contract }: Question): Answer | null {
+  const found = compareTableaus(original, rewritten, contract, bitPairs(original, rewritten));
+  if (!found) return null;
+  const { isSame, generators, witness } = found;
+  const zero = { hilbertSchmidt: 0, processInfidelity: 0, worstCase: 0, angle: 0, errorBar: 0 };
+  return {
+    ...undecided(`Clifford circuits: ${generators} stabilisers of what can be seen were compared`),
+    verdict: isSame ? 'same' : 'different',
+    distance: isSame ? zero : null,
+    method: 'tableau',
+    proof: true,
+    witness,
+    unfoldedWires: original.wires,
+  };
 }
 
 /** A difference on a random product input is a counterexample; none on several is evidence. */
