@@ -20,6 +20,7 @@ function output(words: string): string {
   const { stdout } = spawnSync('node', [program, ...list, '--quiet'], {
     cwd: root,
     encoding: 'utf8',
+    env: { ...process.env, NO_COLOR: '1' },
   });
   return stdout.trimEnd();
 }

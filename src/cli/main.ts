@@ -5,7 +5,6 @@
  */
 import { fileURLToPath } from 'node:url';
 import { Command, CommanderError, Option } from 'commander';
-import pc from 'picocolors';
 import {
   type Certificate,
   certificateOf,
@@ -19,6 +18,7 @@ import type { InputRule, OutputRule } from '../contract.ts';
 import { formatProblem, InputError, nearestWord } from '../input-error.ts';
 import { type Captioned, pictureSheet } from '../write/picture-sheet.ts';
 import { reportHtml } from '../write/report-html.ts';
+import { errorColours } from './colours.ts';
 import { checkWritable, readText, sourceOf, writeWhole } from './files.ts';
 import {
   commonOptions,
@@ -260,7 +260,7 @@ function deliver(
   pictures: readonly Captioned[],
 ): void {
   for (const warning of warnings) {
-    process.stderr.write(`${pc.yellow('warning')}: ${formatProblem(warning)}\n`);
+    process.stderr.write(`${errorColours.yellow('warning')}: ${formatProblem(warning)}\n`);
   }
   if (words.out && text !== null) {
     writeWhole(words.out, text);
@@ -292,7 +292,7 @@ function explain(error: unknown): number {
   }
   if (error instanceof InputError) {
     for (const problem of error.problems) {
-      process.stderr.write(`${pc.red('error')}: ${formatProblem(problem)}\n`);
+      process.stderr.write(`${errorColours.red('error')}: ${formatProblem(problem)}\n`);
     }
     return 2;
   }

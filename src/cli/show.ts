@@ -1,6 +1,5 @@
 /** Writes reports for people: plain sentences and tables, coloured on a terminal only. */
 import Table from 'cli-table3';
-import pc from 'picocolors';
 import type { Counts } from '../circuit/counts.ts';
 import type {
   BuildReport,
@@ -10,6 +9,7 @@ import type {
   NarrowReport,
   SurveyReport,
 } from '../reports.ts';
+import { outputColours as pc } from './colours.ts';
 
 type Report = SurveyReport | NarrowReport | CompareReport | BuildReport;
 

@@ -287,6 +287,16 @@ class Search {
     return entanglerTemplate(this.wanted.wires, placed, this.options.entangler);
   }
 
+  /** Every search tries a fit unless it is stopped before one ends; then no gates at all are the best so far. */
+  private unfitted(): Synthesis {
+    return {
+      ...exact([], 0),
+      boundKind: 'found',
+      notes: ['stopped before a fit'],
+      isStopped: true,
+    };
+  }
+
   /** Keeps the nearest of every count for the frontier. */
   private note(found: readonly Placement[]): void {
     for (const placement of found) {
@@ -300,7 +310,7 @@ class Search {
   private answer(found: Placement | null): Synthesis {
     const rows = [...this.frontier.entries()].sort(([a], [b]) => a - b);
     const best = found ?? rows.map(([, row]) => row).sort((a, b) => a.distance - b.distance)[0];
-    if (!best) throw new Error(`internal: no fit was tried on ${this.wanted.wires} wires`);
+    if (!best) return this.unfitted();
     const used = best.pairs.length;
     const isProven = found !== null && used === 0;
     const meetsBound = found !== null && used === this.generic && !this.isExhausted;

@@ -279,10 +279,11 @@ describe('stopping', () => {
   };
 
   test('Ctrl-C ends it soon, with 130', async () => {
-    const child = spawn('node', [program, 'build', long(), '--tolerance', '1e-300', '--quiet'], {
+    const child = spawn('node', [program, 'build', long(), '--tolerance', '1e-300'], {
       cwd: folder,
     });
-    await new Promise((ready) => setTimeout(ready, 1500));
+    // the first line of progress says that the work has begun
+    await new Promise((begun) => child.stderr.once('data', begun));
     child.kill('SIGINT');
     const code = await new Promise((ended) => child.on('exit', (status) => ended(status)));
     expect(code).toBe(130);
