@@ -6,8 +6,8 @@
  * out. The distance is that of `channel-distance.ts`; it is a proof up to its error bar.
  * Matching: wires by number, or by the annotations of a narrowed circuit; bits by name, else by position. Extra wires of
  * the rewritten circuit start in |0> and are dropped.
- * Beyond dense size: gate by gate (`gate-by-gate.ts`, a proof of equality), then tableaus for Clifford circuits (`tableau.ts`, a
- * proof both ways), then random product inputs (`probes.ts`, a proof of
+ * Beyond dense size: tableaus for Clifford circuits (`tableau.ts`, a proof both ways), then gate by gate (`gate-by-gate.ts`, a
+ * proof of equality), then random product inputs (`probes.ts`, a proof of
  * difference, evidence of equality), else `undecided`.
  * Fails: InputError for circuits that cannot be matched.
  */
@@ -92,8 +92,8 @@ function answerTo(question: Question): Answer {
   } catch (error) {
     if (!(error instanceof InputError) || error.code !== 'too-large') throw error;
     return (
-      gateByGateAnswer(question) ??
       tableauAnswer(question) ??
+      gateByGateAnswer(question) ??
       probeAnswer(question) ??
       undecided(error.problems[0]!.message)
     );
@@ -126,7 +126,11 @@ function tableauAnswer({ original, rewritten, contract }: Question): Answer | nu
   const { isSame, generators, witness } = found;
   const zero = { hilbertSchmidt: 0, processInfidelity: 0, worstCase: 0, angle: 0, errorBar: 0 };
   return {
-    ...undecided(`Clifford circuits: ${generators} stabilisers of what can be seen were compared`),
+    ...undecided(
+      generators > 0
+        ? `Clifford circuits: ${generators} independent stabilisers of what can be seen were compared`
+        : 'Clifford circuits: no parity of what can be seen is fixed in the original',
+    ),
     verdict: isSame ? 'same' : 'different',
     distance: isSame ? zero : null,
     method: 'tableau',

@@ -4,7 +4,9 @@
  * A line is named by the input that enters on it. Swaps only say which line a wire carries; a condition on measured bits
  * becomes a control on the lines that were measured; an XOR of bits into a bit of its own line becomes a CX at the end.
  * Result: null where a circuit is not of this kind (a line measured and then changed, a reset without a name for what
- * enters, a condition on many bits): other roads must take it.
+ * enters, a condition on many bits): other roads must take it. With `isUnfolding` the first two become lines of their own,
+ * numbered on from the outputs, which start in |0>: a reset starts one, and a measured line that is changed leaves its
+ * outcome on one by a CX (deferred measurement: Nielsen, Chuang (2010), 4.4).
  * Shape: matrices are planar, on `lines`, first = most significant.
  */
 import {
@@ -36,12 +38,19 @@ export type Lines = {
   lineOfBit: Int32Array;
   /** Lines whose outcome a condition reads. */
   read: Set<number>;
+  /** Number of lines, those of the inputs first. */
+  count: number;
 };
 
 const GATE_LINES_MAX = 6;
 
-export function linesOf(circuit: Circuit, outputs: number, isAnnotated: boolean): Lines | null {
-  const run = new LineWalk(circuit, outputs, isAnnotated);
+export function linesOf(
+  circuit: Circuit,
+  outputs: number,
+  isAnnotated: boolean,
+  isUnfolding = false,
+): Lines | null {
+  const run = new LineWalk(circuit, outputs, isAnnotated, isUnfolding);
   for (let k = 0; k < circuit.operations.length; k++) if (!run.step(k)) return null;
   return run.finish();
 }
@@ -57,12 +66,17 @@ class LineWalk {
   private readonly measured = new Set<number>();
   private readonly read = new Set<number>();
   private readonly entered = new Set<number>();
+  private readonly shapes = new Map<string, Pick<LineGate, 'matrix' | 'isControl'>>();
   private readonly circuit: Circuit;
   private readonly isAnnotated: boolean;
+  private readonly isUnfolding: boolean;
+  private count: number;
 
-  constructor(circuit: Circuit, outputs: number, isAnnotated: boolean) {
+  constructor(circuit: Circuit, outputs: number, isAnnotated: boolean, isUnfolding: boolean) {
     this.circuit = circuit;
     this.isAnnotated = isAnnotated;
+    this.isUnfolding = isUnfolding;
+    this.count = Math.max(outputs, isAnnotated ? 0 : circuit.wires);
     this.lineOfWire = Int32Array.from({ length: circuit.wires }, (_, k) => (isAnnotated ? -1 : k));
     this.lineOfOutput = new Int32Array(outputs).fill(-1);
     this.lineOfBit = new Int32Array(circuit.bits).fill(-1);
@@ -80,9 +94,12 @@ class LineWalk {
       case 'gate':
         return this.gate(operation);
       case 'measure': {
-        const line = this.lineOfWire[operation.wire]!;
-        if (operation.condition || line < 0) return false;
-        if (!this.leave(operation, line)) return false;
+        const from = this.lineOfWire[operation.wire]!;
+        if (operation.condition || from < 0) return false;
+        if (!this.leave(operation, from)) return false;
+        // a second measurement of an outcome that a bit holds already
+        const isAgain = this.isUnfolding && this.measured.has(from) && operation.bit >= 0;
+        const line = isAgain && this.lineOfBit.includes(from) ? this.copied(from) : from;
         if (operation.bit >= 0) {
           this.bits[operation.bit] = { kind: 'bit', bit: line };
           this.lineOfBit[operation.bit] = line;
@@ -92,15 +109,22 @@ class LineWalk {
       }
       case 'reset': {
         const line = this.lineOfWire[operation.wire]!;
-        if (operation.condition || !this.isAnnotated) return false;
+        if (operation.condition) return false;
         if (line >= 0 && !this.leave(operation, line)) return false;
-        const input = entering(operation);
+        const input = this.isAnnotated ? entering(operation) : -1;
+        if (input < 0) return this.isUnfolding && this.fresh(operation.wire);
         this.lineOfWire[operation.wire] = input;
-        if (input < 0 || this.entered.has(input)) return false;
+        if (this.entered.has(input)) return false;
         this.entered.add(input);
         return true;
       }
     }
+  }
+
+  /** A line of its own, in |0>, on a wire. */
+  private fresh(wire: number): true {
+    this.lineOfWire[wire] = this.count++;
+    return true;
   }
 
   /** `b = b ^ c ^ ...` is kept as CX from the other bits' lines; every other value is not for this road. */
@@ -137,19 +161,85 @@ class LineWalk {
       this.lineOfWire[b] = lines[0]!;
       return true;
     }
-    const read = operation.condition ? this.overLines(operation.condition) : undefined;
+    const { condition } = operation;
+    const isOwn = (line: number): boolean => lines.includes(line);
+    if (condition) bitsOf(this.overLines(condition)).filter(isOwn).every((line) => this.setAside(line)); // biome-ignore format: one step
+    const read = condition ? this.overLines(condition) : undefined;
     const controls = bitsOf(read);
     for (const line of controls) this.read.add(line);
     if (controls.length + lines.length > GATE_LINES_MAX) return false;
-    if (controls.some((line) => lines.includes(line))) return false;
-    const matrix = read
-      ? conditioned(gateMatrix(operation), lines.length, controls, read)
-      : gateMatrix(operation);
-    const gate = { ...lineGate([...controls, ...lines], matrix), ...(operation.line === undefined ? {} : { at: operation.line }) }; // biome-ignore format: one gate
+    if (controls.some(isOwn)) return false;
+    const at = operation.line === undefined ? {} : { at: operation.line };
+    const all = [...controls, ...lines];
+    const gate = read
+      ? {
+          ...lineGate(all, conditioned(gateMatrix(operation), lines.length, controls, read)),
+          ...at,
+        }
+      : { ...this.shaped(operation, lines), ...at };
     // a measured line may only be read: a control, never a target
-    const isFine = gate.lines.every((line, k) => !this.measured.has(line) || gate.isControl[k]);
-    if (isFine) this.gates.push(gate);
-    return isFine;
+    for (const [k, line] of gate.lines.entries()) {
+      if (this.measured.has(line) && !gate.isControl[k] && !this.setAside(line)) return false;
+    }
+    this.gates.push(gate);
+    return true;
+  }
+
+  /** The gate on its lines; gates of one name and shape share their matrices. */
+  private shaped(operation: GateOperation, lines: readonly number[]): LineGate {
+    if (operation.matrix) return lineGate(lines, gateMatrix(operation));
+    const { name, angles, power, controls } = operation;
+    const order = [...lines].sort((a, b) => a - b);
+    const key = [
+      name,
+      power,
+      ...angles,
+      ...controls,
+      ...lines.map((line) => order.indexOf(line)),
+    ].join();
+    let shape = this.shapes.get(key);
+    if (!shape) {
+      const { matrix, isControl } = lineGate(lines, gateMatrix(operation));
+      shape = { matrix, isControl };
+      this.shapes.set(key, shape);
+    }
+    return { lines: order, ...shape };
+  }
+
+  /** A new line with the outcome of a measured one. */
+  private copied(line: number): number {
+    const copy = this.count++;
+    this.gates.push(lineGate([line, copy], CX));
+    return copy;
+  }
+
+  /** A measured line is about to change: its outcome goes to a line of its own. False where that is not wanted. */
+  private setAside(line: number): boolean {
+    // as a kept output it is a qubit, which cannot be copied
+    if (!this.isUnfolding || this.lineOfOutput.includes(line) || this.xors.length > 0) return false;
+    const copy = this.copied(line);
+    for (const [bit, from] of this.lineOfBit.entries()) {
+      if (from === line) this.lineOfBit[bit] = copy;
+    }
+    const rename = (expression: BitExpression): BitExpression => {
+      switch (expression.kind) {
+        case 'constant':
+          return expression;
+        case 'bit':
+          return expression.bit === line ? { kind: 'bit', bit: copy } : expression;
+        case 'not':
+          return { kind: 'not', of: rename(expression.of) };
+        default:
+          return { kind: expression.kind, of: expression.of.map(rename) };
+      }
+    };
+    this.bits.forEach((expression, bit) => {
+      this.bits[bit] = rename(expression);
+    });
+    this.measured.delete(line);
+    this.measured.add(copy);
+    if (this.read.delete(line)) this.read.add(copy);
+    return true;
   }
 
   private overLines(expression: BitExpression): BitExpression {
@@ -170,8 +260,8 @@ class LineWalk {
       if (!this.isAnnotated && wire < this.lineOfOutput.length) this.lineOfOutput[wire] = line;
     });
     this.gates.push(...this.xors);
-    const { gates, lineOfOutput, lineOfBit, read } = this;
-    return { gates, lineOfOutput, lineOfBit, read };
+    const { gates, lineOfOutput, lineOfBit, read, count } = this;
+    return { gates, lineOfOutput, lineOfBit, read, count };
   }
 }
 

@@ -42,10 +42,7 @@ export function observation(
   const wires = contract.inputs.map((_, wire) => wire);
   const anyInputs = wires.filter((wire) => contract.inputs[wire] === 'any');
   const kept = wires.filter((wire) => contract.outputs[wire] === 'kept');
-  const intoBits = measuredWires(original);
-  const virtual = wires.filter(
-    (wire) => contract.outputs[wire] === 'measured' && !intoBits.has(wire),
-  );
+  const virtual = unwrittenOutputs(original, contract);
   const visible = visibleBits(original);
   const partner = matchBits(original, rewritten);
   const names = {
@@ -75,6 +72,14 @@ export function observation(
       return { keptAxes: kept.map(place), bits: [...own, ...extra], anyInputs };
     },
   };
+}
+
+/** Outputs that the contract measures and the original does not write into a bit: they are seen by themselves. */
+export function unwrittenOutputs(original: Circuit, { outputs }: Contract): number[] {
+  const intoBits = measuredWires(original);
+  return outputs.flatMap((rule, wire) =>
+    rule === 'measured' && !intoBits.has(wire) ? [wire] : [],
+  );
 }
 
 /** Wires whose last operation is a measurement into a bit. */

@@ -6,8 +6,9 @@
  * one or two lines updates 32 generators at a time. What an observer sees is the subgroup of stabilisers that are
  * trivial on dropped lines and I or Z on measured ones; two circuits are the same exactly when these subgroups agree, signs
  * included. They are compared in reduced echelon form (Aaronson, Gottesman, PRA 70, 052328 (2004), for the phases).
+ * Measurements in the middle, resets and conditions that are parities of bits are unfolded to lines of their own (`lines.ts`).
  * Proves: both ways. A difference comes with a Pauli that has different expectations, as input and output.
- * Fails: null when a gate is no Clifford gate on at most two lines, or the circuit is not gates on lines (`lines.ts`).
+ * Fails: null when a gate is no Clifford gate on at most `ACTION_LINES_MAX` lines, or the circuit is not gates on lines.
  * Cost: (gates) x (generators / 32), then (generators)^3 / 16 for the echelon form.
  */
 import { bitName, type Circuit, wireName } from '../circuit/circuit.ts';
@@ -17,6 +18,7 @@ import { adjoint, kron, mul } from '../numeric/complex-matrix.ts';
 import type { Witness } from '../reports.ts';
 import { isAnnotated } from './annotations.ts';
 import { type LineGate, type Lines, linesOf } from './lines.ts';
+import { unwrittenOutputs } from './observation.ts';
 
 export type TableauAnswer = { isSame: boolean; generators: number; witness: Witness | null };
 
@@ -30,41 +32,57 @@ export function compareTableaus(
   partner: readonly { original: number; rewritten: number }[],
 ): TableauAnswer | null {
   const n = contract.inputs.length;
-  const a = linesOf(original, n, isAnnotated(original));
-  const b = linesOf(rewritten, n, isAnnotated(rewritten));
-  if (!a || !b) return null;
-  const names = columnNames(original, contract, partner);
-  const left = observedGroup(a, contract, partner.map((pair) => pair.original)); // biome-ignore format: two calls alike
-  const right = observedGroup(b, contract, partner.map((pair) => pair.rewritten)); // biome-ignore format: two calls alike
+  const a = linesOf(original, n, isAnnotated(original), true);
+  if (!a?.gates.every(actionOf)) return null;
+  const b = linesOf(rewritten, n, isAnnotated(rewritten), true);
+  if (!b?.gates.every(actionOf)) return null;
+  const unwritten = unwrittenOutputs(original, contract);
+  const left = observedGroup(a, contract, unwritten, partner.map((pair) => pair.original)); // biome-ignore format: two calls alike
+  const right = observedGroup(b, contract, unwritten, partner.map((pair) => pair.rewritten)); // biome-ignore format: two calls alike
   if (!left || !right) return null;
-  const odd = left.rows.find((row) => signIn(right, row) !== row.sign) ?? null;
-  const other = odd ? null : right.rows.find((row) => signIn(left, row) !== row.sign);
-  const found = odd ?? other ?? null;
   const generators = left.rows.length;
-  if (!found) return { isSame: true, generators, witness: null };
+  const odd = lightest(left.rows.filter((row) => signIn(right, row) !== row.sign));
+  const other = lightest(right.rows.filter((row) => signIn(left, row) !== row.sign));
+  if (!odd && !other) return { isSame: true, generators, witness: null };
+  const isOriginal = odd !== null && (other === null || weight(odd) <= weight(other));
+  const names = columnNames(original, contract, partner);
   return {
     isSame: false,
     generators,
-    witness: witnessOf(found, odd ? right : left, odd !== null, names),
+    witness: witnessOf(isOriginal ? odd : other!, isOriginal ? right : left, isOriginal, names),
   };
+}
+
+/** Number of columns on which a stabiliser is not the identity. */
+function weight({ x, z }: Row): number {
+  let sum = 0;
+  for (let w = 0; w < x.length; w++) sum += ones(x[w]! | z[w]!);
+  return sum;
+}
+
+function lightest(rows: readonly Row[]): Row | null {
+  return rows.reduce<Row | null>(
+    (best, row) => (best === null || weight(row) < weight(best) ? row : best),
+    null,
+  );
 }
 
 /** What each clifford gate does to Paulis: for every pattern of x and z bits the new bits, and whether the sign turns. */
 type Action = { size: number; images: Int32Array; flips: Uint8Array };
 
-const actions = new Map<string, Action | null>();
+const ACTION_LINES_MAX = 4;
+/** By matrix: gates of one name share theirs. */
+const actions = new WeakMap<Float64Array, { action: Action | null }>();
 
 function actionOf({ lines, matrix }: LineGate): Action | null {
-  const key = `${lines.length}:${matrix.join()}`;
-  const known = actions.get(key);
-  if (known !== undefined) return known;
-  const made = lines.length <= 2 ? conjugation(matrix, lines.length) : null;
-  if (actions.size > 10_000) actions.clear();
-  actions.set(key, made);
-  return made;
+  const known = actions.get(matrix);
+  if (known) return known.action;
+  const action = lines.length <= ACTION_LINES_MAX ? conjugation(matrix, lines.length) : null;
+  actions.set(matrix, { action });
+  return action;
 }
 
-/** Pattern bits: x of line 0, z of line 0, x of line 1, z of line 1 (least significant first). */
+/** Pattern bits: x of line 0, z of line 0, x of line 1, z of line 1 and so on, least significant first. */
 function conjugation(u: Float64Array, size: number): Action | null {
   const patterns = 4 ** size;
   const d = 2 ** size;
@@ -88,34 +106,39 @@ function conjugation(u: Float64Array, size: number): Action | null {
 }
 
 function pauliOf(pattern: number, size: number): Float64Array {
-  const first = PAULIS[pattern & 3]!;
-  return size === 1 ? first : kron(first, PAULIS[pattern >> 2]!, 2, 2);
+  let product = PAULIS[pattern & 3]!;
+  for (let k = 1; k < size; k++)
+    product = kron(product, PAULIS[(pattern >> (2 * k)) & 3]!, 2 ** k, 2);
+  return product;
 }
 
 /** One stabiliser: bits of x and z over the columns, 32 a word, and its sign (1 = minus). */
 type Row = { x: Uint32Array; z: Uint32Array; sign: number };
 type Group = { rows: Row[]; pivots: Map<number, number>; columns: number };
 
-function observedGroup(lines: Lines, contract: Contract, bits: readonly number[]): Group | null {
-  const n = contract.inputs.length;
+function observedGroup(
+  lines: Lines,
+  contract: Contract,
+  unwritten: readonly number[],
+  bits: readonly number[],
+): Group | null {
   const references = contract.inputs.flatMap((rule, line) => (rule === 'any' ? [line] : []));
-  const generators = n + references.length;
+  const generators = lines.count + references.length;
   const words = Math.ceil(generators / 32);
-  const make = (): Uint32Array[] => Array.from({ length: n }, () => new Uint32Array(words));
+  const make = (): Uint32Array[] =>
+    Array.from({ length: lines.count }, () => new Uint32Array(words));
   const [x, z] = [make(), make()];
   const signs = new Uint32Array(words);
   const set = (column: Uint32Array, k: number): void => {
     column[k >> 5]! |= 1 << (k & 31);
   };
   // generator `line`: Z on the line; for `any` inputs with Z on the reference, and one more, X with X
-  for (let line = 0; line < n; line++) set(z[line]!, line);
+  for (let line = 0; line < lines.count; line++) set(z[line]!, line);
   references.forEach((line, k) => {
-    set(x[line]!, n + k);
+    set(x[line]!, lines.count + k);
   });
   for (const gate of lines.gates) {
-    const action = actionOf(gate);
-    if (!action) return null;
-    applyAction(action, gate.lines, x, z, signs);
+    applyAction(actionOf(gate)!, gate.lines, x, z, signs); // all are known to be Clifford gates
   }
   const kept: number[] = [];
   const measured: number[] = [];
@@ -125,16 +148,19 @@ function observedGroup(lines: Lines, contract: Contract, bits: readonly number[]
     if (line < 0 || measured.includes(line)) return null;
     measured.push(line);
   }
-  for (const [output, rule] of contract.outputs.entries()) {
-    const line = lines.lineOfOutput[output]!;
-    if (rule === 'kept') kept.push(line);
-    else if (rule === 'measured' && !measured.includes(line)) measured.push(line);
-  }
+  for (const output of unwritten) measured.push(lines.lineOfOutput[output]!);
+  contract.outputs.forEach((rule, output) => {
+    if (rule === 'kept') kept.push(lines.lineOfOutput[output]!);
+  });
   if ([...kept, ...measured].some((line) => line < 0)) return null;
   const seen = new Set([...kept, ...measured]);
-  const dropped = Array.from({ length: n }, (_, line) => line).filter((line) => !seen.has(line));
+  // a qubit that is kept and measured as well
+  if (seen.size < kept.length + measured.length) return null;
+  const dropped = Array.from({ length: lines.count }, (_, line) => line).filter(
+    (line) => !seen.has(line),
+  );
   const rows = Array.from({ length: generators }, (_, k) =>
-    rowOf(k, n, references, [...kept, ...measured, ...dropped], x, z, signs),
+    rowOf(k, lines.count, references, [...kept, ...measured, ...dropped], x, z, signs),
   );
   return restrictedGroup(rows, references.length + kept.length, measured.length, dropped.length);
 }
@@ -146,29 +172,33 @@ function applyAction(
   z: readonly Uint32Array[],
   signs: Uint32Array,
 ): void {
-  const [a, b] = [x[lines[0]!]!, z[lines[0]!]!];
-  const [c, d] = size === 2 ? [x[lines[1]!]!, z[lines[1]!]!] : [a, b];
+  const count = 2 * size;
+  const columns: Uint32Array[] = [];
+  for (const line of lines) columns.push(x[line]!, z[line]!);
+  const bits = new Int32Array(count);
+  const out = new Int32Array(count);
   for (let w = 0; w < signs.length; w++) {
-    const bits = size === 2 ? [a[w]!, b[w]!, c[w]!, d[w]!] : [a[w]!, b[w]!];
+    let any = 0;
+    for (let k = 0; k < count; k++) {
+      bits[k] = columns[k]![w]!;
+      any |= bits[k]!;
+    }
+    // no generator of these 32 is on the lines
+    if (any === 0) continue;
     let sign = signs[w]!;
     for (let p = 1; p < flips.length; p++) {
       if (!flips[p]) continue;
-      let mask = 0xffffffff;
-      for (let k = 0; k < bits.length; k++) mask &= (p >> k) & 1 ? bits[k]! : ~bits[k]!;
+      let mask = -1;
+      for (let k = 0; k < count; k++) mask &= (p >> k) & 1 ? bits[k]! : ~bits[k]!;
       sign ^= mask;
     }
-    const out = [0, 0, 0, 0];
-    for (let k = 0; k < bits.length; k++) {
+    out.fill(0);
+    for (let k = 0; k < count; k++) {
       const image = images[1 << k]!;
-      for (let q = 0; q < bits.length; q++) if ((image >> q) & 1) out[q]! ^= bits[k]!;
+      for (let q = 0; q < count; q++) if ((image >> q) & 1) out[q]! ^= bits[k]!;
     }
     signs[w] = sign;
-    a[w] = out[0]!;
-    b[w] = out[1]!;
-    if (size === 2) {
-      c[w] = out[2]!;
-      d[w] = out[3]!;
-    }
+    for (let k = 0; k < count; k++) columns[k]![w] = out[k]!;
   }
 }
 
@@ -217,7 +247,10 @@ function restrictedGroup(all: Row[], free: number, measured: number, dropped: nu
     clear('z', column);
   }
   for (let column = free; column < free + measured; column++) clear('x', column);
-  return echelon(rows, columns);
+  // nothing is left on the dropped columns, which may be more in one circuit than in the other
+  const words = Math.ceil((free + measured) / 32);
+  const shortened = rows.map(({ x, z, sign }) => ({ x: x.slice(0, words), z: z.slice(0, words), sign })); // biome-ignore format: one list
+  return echelon(shortened, free + measured);
 }
 
 /** Slot 2 c is the x bit of column c, slot 2 c + 1 its z bit. */
@@ -273,6 +306,9 @@ function signIn({ rows, pivots, columns }: Group, row: Row): number {
   return rest.sign;
 }
 
+/** So many parts of a parity are written out. */
+const WITNESS_NAMES_MAX = 12;
+
 type Names = { references: string[]; outputs: string[] };
 
 function columnNames(
@@ -282,9 +318,10 @@ function columnNames(
 ): Names {
   const references = contract.inputs.flatMap((rule, wire) => (rule === 'any' ? [wireName(original, wire)] : [])); // biome-ignore format: one list
   const kept = contract.outputs.flatMap((rule, wire) => (rule === 'kept' ? [wireName(original, wire)] : [])); // biome-ignore format: one list
+  const others = unwrittenOutputs(original, contract).map((wire) => wireName(original, wire));
   return {
     references,
-    outputs: [...kept, ...partner.map(({ original: bit }) => bitName(original, bit))],
+    outputs: [...kept, ...partner.map(({ original: bit }) => bitName(original, bit)), ...others],
   };
 }
 
@@ -298,13 +335,16 @@ function witnessOf(row: Row, other: Group, isOriginal: boolean, names: Names): W
     const here = letter(names.references.length + k);
     return here === 'I' ? [] : [`${name}:${here}`];
   });
+  const shown = parts.slice(0, WITNESS_NAMES_MAX).join(' ');
+  const more =
+    parts.length > WITNESS_NAMES_MAX ? ` and ${parts.length - WITNESS_NAMES_MAX} more` : '';
   const held = signIn(other, row);
   // an even parity is the +1 outcome of the Pauli; the Bell pair transposes Y, which the state -i takes in
   const even = (sign: number): number => (sign < 0 ? 0.5 : sign === 0 ? 1 : 0);
   const [own, its] = [even(row.sign), even(held)];
   return {
     input: input === '' ? 'all wires in |0>' : input,
-    output: `even parity of ${parts.join(' ')}`,
+    output: `even parity of ${shown}${more}`,
     probabilityOriginal: isOriginal ? own : its,
     probabilityRewritten: isOriginal ? its : own,
   };

@@ -63,6 +63,52 @@ test('2,000 random pairs: the tableau and the dense road agree', () => {
   expect(same).toBeLessThan(1800);
 }, 120_000);
 
+/** Gates, measurements in the middle, resets, and Pauli gates on parities of bits. */
+function dynamic(n: number, length: number, draw: Random): Operation[] {
+  const written: number[] = [];
+  return Array.from({ length }, (): Operation => {
+    const r = draw();
+    const wire = whole(draw, n);
+    if (r < 0.2) {
+      const bit = whole(draw, n);
+      written.push(bit);
+      return { kind: 'measure', wire, bit };
+    }
+    if (r < 0.3) return { kind: 'reset', wire };
+    if (r < 0.45 && written.length > 0) {
+      const of = [...new Set(written.slice(-2))].map((bit) => ({ kind: 'bit', bit }) as const);
+      const condition = of.length === 1 ? of[0]! : ({ kind: 'xor', of } as const);
+      return { ...gate(draw() < 0.5 ? 'x' : 'z', [wire]), condition };
+    }
+    return cliffords(n, 1, draw)[0]!;
+  });
+}
+
+test('600 pairs with measurements and resets in the middle: both roads agree', () => {
+  const met = { same: 0, different: 0, left: 0 };
+  for (let seed = 0; seed < 600; seed++) {
+    const draw = random(seed, 'dynamic');
+    const n = 2 + whole(draw, 2);
+    const base = dynamic(n, 7, draw);
+    const word = cliffords(n, 2, draw);
+    const at = whole(draw, base.length);
+    const added = seed % 2 ? [...word, ...inverse(word)] : cliffords(n, 1, draw);
+    const [a, b] = [base, [...base.slice(0, at), ...added, ...base.slice(at)]].map((list) => measuredAt(n, list)); // biome-ignore format: a pair
+    const found = tableau(a!, b!);
+    const dense = compareCircuits(a!, b!);
+    if (!found) met.left++;
+    else {
+      if (found.isSame !== (dense.verdict === 'same')) {
+        throw new Error(`seed ${seed}: tableau ${found.isSame}, dense ${dense.verdict}`);
+      }
+      met[found.isSame ? 'same' : 'different']++;
+    }
+  }
+  expect(met.same).toBeGreaterThan(250);
+  expect(met.different).toBeGreaterThan(60);
+  expect(met.left).toBeLessThan(60);
+});
+
 describe('any size', () => {
   test('200 wires, 20,000 gates: proved the same, and one Z more is a difference', () => {
     const draw = random(1, 'large');
