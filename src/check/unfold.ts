@@ -83,7 +83,7 @@ class Unfolding {
     this.circuit = circuit;
     this.contract = contract;
     this.isAnnotated = isAnnotated(circuit);
-    this.mustCopy = measurementsToCopy(circuit);
+    this.mustCopy = measurementsToCopy(circuit, contract, this.isAnnotated);
     this.axisOfWire = new Int32Array(circuit.wires).fill(-1);
     this.outputAxis = new Int32Array(contract.outputs.length).fill(-1);
     this.bits = Array.from({ length: circuit.bits }, () => ({ kind: 'constant', value: false }));
@@ -350,10 +350,20 @@ function chosen(
   };
 }
 
-/** Measurements whose wire is changed again before it is reset: their outcome needs an axis of its own. */
-function measurementsToCopy({ operations, wires }: Circuit): Set<number> {
+/**
+ * Measurements whose wire is changed again before it is reset, or handed on as a kept output: their outcome needs an
+ * axis of its own (somebody who keeps the qubit sees that it was measured).
+ */
+function measurementsToCopy(
+  { operations, wires }: Circuit,
+  { outputs }: Contract,
+  annotated: boolean,
+): Set<number> {
   const found = new Set<number>();
   const isChangedLater = new Uint8Array(wires);
+  if (!annotated) {
+    for (let wire = 0; wire < wires; wire++) if (outputs[wire] === 'kept') isChangedLater[wire] = 1;
+  }
   for (let k = operations.length - 1; k >= 0; k--) {
     const operation = operations[k]!;
     if (operation.kind === 'reset') isChangedLater[operation.wire] = operation.condition ? 1 : 0;
@@ -370,6 +380,9 @@ function measurementsToCopy({ operations, wires }: Circuit): Set<number> {
         if (!isControl) isChangedLater[wire] = 1;
       });
     }
+    const isHandedOn = outputs[leaving(operation)] === 'kept';
+    if (isHandedOn && (operation.kind === 'measure' || operation.kind === 'reset'))
+      isChangedLater[operation.wire] = 1;
   }
   return found;
 }
