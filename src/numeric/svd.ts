@@ -12,6 +12,8 @@ import { adjoint, identity, mul } from './complex-matrix.ts';
 import { normal, type Random } from './random.ts';
 
 const SWEEPS_MAX = 60;
+/** Products of columns below this underflow: their phase is noise, and a rotation by it would be no rotation. */
+const PRODUCT_LEAST = 1e-290;
 
 export type Svd = { u: Float64Array; s: Float64Array; v: Float64Array };
 
@@ -87,7 +89,7 @@ function orthogonalise(
     imag += a * d - b * c;
   }
   const size = Math.hypot(re, imag);
-  if (size === 0 || size <= 1e-16 * Math.sqrt(pp * qq)) return false;
+  if (size < PRODUCT_LEAST || size <= 1e-16 * Math.sqrt(pp * qq)) return false;
   // phase of <p, q> removed, then the real rotation that makes both orthogonal
   const [cr, ci] = [re / size, imag / size];
   const theta = (qq - pp) / (2 * size);
