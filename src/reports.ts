@@ -102,6 +102,9 @@ export type Witness = {
   probabilityRewritten: number;
 };
 
+/** Lines of a text, first and last. */
+export type Stretch = { from: number; to: number } | null;
+
 export type CompareReport = Head<'compare'> & {
   original: string;
   rewritten: string;
@@ -112,8 +115,8 @@ export type CompareReport = Head<'compare'> & {
   method: string;
   proof: boolean;
   witness: Witness | null;
-  /** When different: the lines of both texts where the first gates without a counterpart stand. */
-  where?: { original: number | null; rewritten: number | null } | null;
+  /** When different: the stretches of both texts, by lines, outside of which they agree; null for a circuit with no gate there. */
+  where?: { original: Stretch; rewritten: Stretch } | null;
   /** relabelling[k] = output wire of the rewritten circuit that carries output k; null when not asked for. */
   relabelling: number[] | null;
 };

@@ -6,18 +6,18 @@
  * out. The distance is that of `channel-distance.ts`; it is a proof up to its error bar.
  * Matching: wires by number, or by the annotations of a narrowed circuit; bits by name, else by position. Extra wires of
  * the rewritten circuit start in |0> and are dropped.
- * Beyond dense size: tableaus for Clifford circuits (`tableau.ts`, a proof both ways), then gate by gate (`gate-by-gate.ts`, a
- * proof of equality), then random product inputs (`probes.ts`, a proof of
- * difference, evidence of equality), else `undecided`.
+ * Beyond dense size: the roads of `beyond-dense.ts`, which prove; then random product inputs (`probes.ts`, a proof of difference,
+ * evidence of equality), else `undecided`.
  * Fails: InputError for circuits that cannot be matched.
  */
 import type { BitExpression, Circuit } from '../circuit/circuit.ts';
 import { contractOf, isProgram } from '../circuit/contract.ts';
 import { type Contract, type ContractOptions, contractName } from '../contract.ts';
 import { InputError } from '../input-error.ts';
-import { distanceAngle, processInfidelity } from '../numeric/distance.ts';
 import type { CompareReport } from '../reports.ts';
 import { isAnnotated } from './annotations.ts';
+import { type Answer, distances, type Question, undecided } from './answer.ts';
+import { answerBeyondDense, sameByGates } from './beyond-dense.ts';
 import { channelDistance } from './channel-distance.ts';
 import {
   bitDistribution,
@@ -25,13 +25,12 @@ import {
   distributionDistance,
   likeliestDifference,
 } from './distribution.ts';
-import { compareGateByGate, firstUnmatched, type GateByGate } from './gate-by-gate.ts';
-import { bitPairs, type Observation, observation } from './observation.ts';
+import { type Observation, observation } from './observation.ts';
 import { type Observed, observe } from './observed.ts';
 import { PROBES, probeOf } from './probes.ts';
 import { findRelabelling } from './relabel.ts';
-import { compareTableaus } from './tableau.ts';
 import { type Unfolded, unfold } from './unfold.ts';
+import { whereTheyPart } from './where.ts';
 import { findWitness } from './witness.ts';
 import { WORST_CASE_ROWS_MAX, worstCaseDistance } from './worst-case.ts';
 
@@ -45,6 +44,9 @@ export type CompareOptions = {
 };
 
 export const COMPARE_TOLERANCE = 1e-10;
+
+/** From here on matrices take seconds. */
+const LARGE_WIRES = 9;
 
 /** Beyond this many bits alone their distributions are compared, not a matrix for each outcome. */
 const MATRIX_BITS_MAX = 12;
@@ -73,71 +75,24 @@ export function compareCircuits(
   const question = { original, rewritten, contract, tolerance, relabel, seed };
   const answer = answerTo(question);
   if (answer.verdict !== 'different') return { ...head, ...answer };
-  return { ...head, ...answer, where: firstUnmatched(original, rewritten, contract) };
+  return { ...head, ...answer, where: whereTheyPart(original, rewritten, contract) };
 }
 
-type Question = {
-  original: Circuit;
-  rewritten: Circuit;
-  contract: Contract;
-  tolerance: number;
-  relabel: boolean;
-  seed: number;
-};
-
-/** The first road that leads to an answer: dense; then proofs of equality at any size; then probes. */
+/** The first road that leads to an answer: dense; then proofs at any size; then probes. */
 function answerTo(question: Question): Answer {
   try {
+    // large matrices can be spared when nearly all gates are the same
+    if (question.contract.inputs.length >= LARGE_WIRES) {
+      const found = sameByGates(question);
+      if (found) return found;
+    }
     return denseAnswer(question);
   } catch (error) {
     if (!(error instanceof InputError) || error.code !== 'too-large') throw error;
     return (
-      tableauAnswer(question) ??
-      gateByGateAnswer(question) ??
-      probeAnswer(question) ??
-      undecided(error.problems[0]!.message)
+      answerBeyondDense(question) ?? probeAnswer(question) ?? undecided(error.problems[0]!.message)
     );
   }
-}
-
-function undecided(why: string): Answer {
-  return {
-    verdict: 'undecided',
-    distance: null,
-    phase: null,
-    method: 'none',
-    proof: false,
-    witness: null,
-    relabelling: null,
-    notes: [why],
-    unfoldedWires: 0,
-  };
-}
-
-function gateByGateAnswer({ original, rewritten, contract, tolerance }: Question): Answer | null {
-  const proof = compareGateByGate(original, rewritten, contract, bitPairs(original, rewritten));
-  return proof && proof.hilbertSchmidt <= tolerance ? provedGateByGate(proof, original) : null;
-}
-
-/** Clifford circuits of any size, proved both ways. */
-function tableauAnswer({ original, rewritten, contract }: Question): Answer | null {
-  const found = compareTableaus(original, rewritten, contract, bitPairs(original, rewritten));
-  if (!found) return null;
-  const { isSame, generators, witness } = found;
-  const zero = { hilbertSchmidt: 0, processInfidelity: 0, worstCase: 0, angle: 0, errorBar: 0 };
-  return {
-    ...undecided(
-      generators > 0
-        ? `Clifford circuits: ${generators} independent stabilisers of what can be seen were compared`
-        : 'Clifford circuits: no parity of what can be seen is fixed in the original',
-    ),
-    verdict: isSame ? 'same' : 'different',
-    distance: isSame ? zero : null,
-    method: 'tableau',
-    proof: true,
-    witness,
-    unfoldedWires: original.wires,
-  };
 }
 
 /** A difference on a random product input is a counterexample; none on several is evidence. */
@@ -208,13 +163,7 @@ function denseAnswer({
   const worstCase = worstCaseOf(left, right, plan, notes);
   return {
     verdict: isSame ? 'same' : 'different',
-    distance: {
-      hilbertSchmidt,
-      processInfidelity: processInfidelity(hilbertSchmidt),
-      worstCase,
-      angle: distanceAngle(hilbertSchmidt),
-      errorBar,
-    },
+    distance: distances(hilbertSchmidt, errorBar, worstCase),
     phase,
     method: 'dense',
     proof: true,
@@ -222,44 +171,6 @@ function denseAnswer({
     relabelling,
     notes,
     unfoldedWires: b.unfoldedWires,
-  };
-}
-
-type Answer = Pick<
-  CompareReport & { unfoldedWires: number },
-  | 'verdict'
-  | 'distance'
-  | 'phase'
-  | 'method'
-  | 'proof'
-  | 'witness'
-  | 'relabelling'
-  | 'notes'
-  | 'unfoldedWires'
->;
-
-function provedGateByGate(
-  { hilbertSchmidt, cancelled, rest }: GateByGate,
-  original: Circuit,
-): Answer {
-  return {
-    verdict: 'same',
-    distance: {
-      hilbertSchmidt,
-      processInfidelity: processInfidelity(hilbertSchmidt),
-      worstCase: null,
-      angle: distanceAngle(hilbertSchmidt),
-      errorBar: null,
-    },
-    phase: null,
-    method: 'gate by gate',
-    proof: true,
-    witness: null,
-    relabelling: null,
-    notes: [
-      `${cancelled} gates of the original were found again, up to commutation and what the contract cannot see${rest > 0 ? `; the ${rest} gates left were compared densely` : ''}; the distance is a bound`,
-    ],
-    unfoldedWires: original.wires,
   };
 }
 
@@ -287,13 +198,7 @@ function compareBits(
   const isSame = hilbertSchmidt <= tolerance;
   return {
     verdict: isSame ? 'same' : 'different',
-    distance: {
-      hilbertSchmidt,
-      processInfidelity: processInfidelity(hilbertSchmidt),
-      worstCase: null,
-      angle: distanceAngle(hilbertSchmidt),
-      errorBar: null,
-    },
+    distance: distances(hilbertSchmidt, null),
     phase: null,
     method: 'dense',
     proof: true,

@@ -1,27 +1,20 @@
 /**
  * Proves two circuits of any size equal by cancelling their gates one against the other.
  *
- * Method: both are written as gates on lines (`lines.ts`). Gates that the contract cannot see are taken out of both: at the
- * beginning, controls on inputs that are |0> or |1> for certain are put in; at the end, a gate goes that is at most a
- * control on lines that are measured with only controls behind, and anything on lines that nobody looks at (deferred
- * measurement: a measured line may be read but not changed, and a traced-out one may be turned at will). Then each
- * gate of the original is looked for in the other list; it may be taken from there when it commutes with all that stand before
- * it on its lines. What is left of both is compared densely when it is on few lines.
+ * Method: of what an observer could notice (`sides.ts`) each gate of the original is looked for in the other list; it may be
+ * taken from there when it commutes with all that stand before it on its lines. What is left of both is compared densely
+ * when it is on few lines.
  * Proves: the same, with D at most 1 - cos(sum of angles of the pairs that were cancelled); it never proves a difference.
  * Cost: about (gates) x (gates that wait on a line); thousands of gates take well under a second.
  */
-import type { Circuit } from '../circuit/circuit.ts';
 import { applyMatrixInto } from '../circuit/unitary.ts';
-import type { Contract } from '../contract.ts';
 import { identity, mul } from '../numeric/complex-matrix.ts';
 import { distanceAngle, hilbertSchmidtDistance } from '../numeric/distance.ts';
-import { isAnnotated } from './annotations.ts';
-import { type LineGate, type Lines, lineGate, linesOf } from './lines.ts';
+import type { LineGate } from './lines.ts';
+import type { Sides } from './sides.ts';
 
 /** Largest angle at which two gates count as the same one. */
 const SAME_ANGLE = 1e-6;
-/** The same, where the question is where two circuits begin to differ. */
-const EQUAL_ANGLE = 1e-11;
 const REST_LINES_MAX = 8;
 /** With more than this left over, nothing further is looked for. */
 const REST_GATES_MAX = 64;
@@ -35,25 +28,8 @@ export type GateByGate = {
   rest: number;
 };
 
-/** The proof, or null when this road does not lead there. `partner[bit]`: the other circuit's bit for each of the original's. */
-export function compareGateByGate(
-  original: Circuit,
-  rewritten: Circuit,
-  contract: Contract,
-  partner: readonly { original: number; rewritten: number }[],
-): GateByGate | null {
-  const n = contract.inputs.length;
-  const a = linesOf(original, n, isAnnotated(original));
-  const b = linesOf(rewritten, n, isAnnotated(rewritten));
-  if (!a || !b) return null;
-  if (!sameEnds(a, b, contract, partner)) return null;
-  // a kept output is a qubit for somebody else: its outcome must not decide anything here
-  const isRead = (output: number): boolean =>
-    a.read.has(a.lineOfOutput[output]!) || b.read.has(b.lineOfOutput[output]!);
-  if (contract.outputs.some((rule, output) => rule === 'kept' && isRead(output))) return null;
-  const ends = endsOf(a, contract);
-  const left = visible(a.gates, contract, ends);
-  const right = visible(b.gates, contract, ends);
+/** The proof, or null when this road does not lead there. */
+export function compareGateByGate({ left, right }: Sides): GateByGate | null {
   const { angle, pairs, restLeft, restRight } = cancel(left, right);
   const rest = restAngle(restLeft, restRight);
   if (rest === null) return null;
@@ -65,163 +41,20 @@ export function compareGateByGate(
   };
 }
 
-/** The lines of both texts where the first gates without a counterpart stand; null where there is none or it is not known. */
-export function firstUnmatched(
-  original: Circuit,
-  rewritten: Circuit,
-  contract: Contract,
-): { original: number | null; rewritten: number | null } | null {
-  const n = contract.inputs.length;
-  const a = linesOf(original, n, isAnnotated(original));
-  const b = linesOf(rewritten, n, isAnnotated(rewritten));
-  if (!a || !b) return null;
-  const ends = endsOf(a, contract);
-  const { restLeft, restRight } = cancel(
-    visible(a.gates, contract, ends),
-    visible(b.gates, contract, ends),
-    EQUAL_ANGLE,
-  );
-  const first = (gates: readonly LineGate[]): number | null => gates.find(({ at }) => at !== undefined)?.at ?? null; // biome-ignore format: one choice
-  return { original: first(restLeft), rewritten: first(restRight) };
-}
-
-type Ends = { isMeasured: Set<number>; isDropped: Set<number> };
-
-/** Every output and bit must come from the same line in both. */
-function sameEnds(
-  a: Lines,
-  b: Lines,
-  contract: Contract,
-  partner: readonly { original: number; rewritten: number }[],
-): boolean {
-  const bitsAgree = partner.every(
-    ({ original, rewritten }) => a.lineOfBit[original] === b.lineOfBit[rewritten],
-  );
-  if (!bitsAgree) return false;
-  return contract.outputs.every(
-    (rule, output) => rule === 'dropped' || a.lineOfOutput[output] === b.lineOfOutput[output],
-  );
-}
-
-function endsOf(a: Lines, { outputs }: Contract): Ends {
-  const isMeasured = new Set<number>();
-  const isDropped = new Set<number>();
-  outputs.forEach((rule, output) => {
-    const line = a.lineOfOutput[output]!;
-    if (rule === 'measured') isMeasured.add(line);
-    if (rule === 'dropped') isDropped.add(line);
-  });
-  for (const line of a.lineOfBit) if (line >= 0) isMeasured.add(line);
-  return { isMeasured, isDropped };
-}
-
-/** The gates that an observer could notice, simplified by what is known of the inputs. */
-function visible(gates: readonly LineGate[], contract: Contract, ends: Ends): LineGate[] {
-  return withoutTail(withKnownInputs(gates, contract), ends);
-}
-
-function withKnownInputs(gates: readonly LineGate[], { inputs }: Contract): LineGate[] {
-  const known = new Map<number, 0 | 1>();
-  inputs.forEach((rule, line) => {
-    if (rule === 'zero') known.set(line, 0);
-  });
-  return gates.flatMap((gate) => {
-    let here = gate;
-    for (const line of gate.lines) {
-      const value = known.get(line);
-      const place = here.lines.indexOf(line);
-      if (value !== undefined && here.isControl[place]) here = restricted(here, place, value);
-    }
-    if (here.lines.length === 0 || isIdentity(here)) return [];
-    for (const line of here.lines) {
-      const value = known.get(line);
-      if (value === undefined) continue;
-      if (here.lines.length === 1 && isFlip(here)) known.set(line, value === 0 ? 1 : 0);
-      else known.delete(line);
-    }
-    return [here];
-  });
-}
-
-/** The block of a gate for one value of a line on which it is a control. */
-function restricted({ lines, matrix, at }: LineGate, place: number, value: 0 | 1): LineGate {
-  const k = lines.length;
-  const d = 2 ** (k - 1);
-  const bit = k - 1 - place;
-  const wide = (state: number): number =>
-    ((state >> bit) << (bit + 1)) | (value << bit) | (state & ((1 << bit) - 1));
-  const out = new Float64Array(2 * d * d);
-  for (let r = 0; r < d; r++) {
-    for (let c = 0; c < d; c++) {
-      const from = wide(r) * 2 * d + wide(c);
-      out[r * d + c] = matrix[from]!;
-      out[d * d + r * d + c] = matrix[4 * d * d + from]!;
-    }
-  }
-  const here = lineGate(
-    lines.filter((_, k) => k !== place),
-    out,
-  );
-  return at === undefined ? here : { ...here, at };
-}
-
-/** The identity up to a phase. */
-function isIdentity({ lines, matrix }: LineGate): boolean {
-  const d = 2 ** lines.length;
-  return hilbertSchmidtDistance(identity(d), matrix).distance < 1e-30;
-}
-
-function isFlip({ matrix }: LineGate): boolean {
-  const size = (k: number): number => Math.hypot(matrix[k]!, matrix[4 + k]!);
-  return size(0) < 1e-15 && size(3) < 1e-15;
-}
-
-function withoutTail(gates: readonly LineGate[], { isMeasured, isDropped }: Ends): LineGate[] {
-  // lines whose Z basis is only read or permuted later, together with others of the kind, before it is measured; and lines
-  // on which nothing comes later. A diagonal gate on the former stays diagonal up to the measurement, and is not seen.
-  const onlyControls = new Set(isMeasured);
-  const isFree = new Set(isDropped);
-  const kept: LineGate[] = [];
-  for (let k = gates.length - 1; k >= 0; k--) {
-    const gate = gates[k]!;
-    const isUnseen = gate.lines.every(
-      (line, at) => isFree.has(line) || (onlyControls.has(line) && gate.isControl[at]),
-    );
-    if (isUnseen) continue;
-    const permutes = gate.lines.every((line) => onlyControls.has(line)) && isMonomial(gate);
-    gate.lines.forEach((line, at) => {
-      isFree.delete(line);
-      if (!permutes && !gate.isControl[at]) onlyControls.delete(line);
-    });
-    kept.push(gate);
-  }
-  return kept.reverse();
-}
-
-/** A permutation of basis states up to phases. */
-function isMonomial({ lines, matrix }: LineGate): boolean {
-  const d = 2 ** lines.length;
-  for (let r = 0; r < d; r++) {
-    let count = 0;
-    for (let c = 0; c < d; c++) {
-      if (Math.hypot(matrix[r * d + c]!, matrix[d * d + r * d + c]!) > 1e-15) count++;
-    }
-    if (count !== 1) return false;
-  }
-  return true;
-}
-
-type Cancelled = {
+export type Cancelled = {
+  /** Sum of the angles between the gates that were taken for the same. */
   angle: number;
   pairs: number;
   restLeft: LineGate[];
   restRight: LineGate[];
 };
 
-function cancel(
+/** Takes out of both what they both begin with, up to commutation: each list does what was taken out, then its rest. */
+export function cancel(
   left: readonly LineGate[],
   right: readonly LineGate[],
   sameAngle = SAME_ANGLE,
+  restMax = REST_GATES_MAX,
 ): Cancelled {
   const isTaken = new Uint8Array(right.length);
   const onLine = new Map<number, number[]>();
@@ -237,8 +70,7 @@ function cancel(
   const restLeft: LineGate[] = [];
   for (const gate of left) {
     // what waits of the original must be passed as well
-    const isFree =
-      restLeft.length <= REST_GATES_MAX && restLeft.every((other) => commute(other, gate));
+    const isFree = restLeft.length <= restMax && restLeft.every((other) => commute(other, gate));
     const found = isFree ? partnersOf(gate, right, onLine, sameAngle) : null;
     if (!found) {
       restLeft.push(gate);

@@ -25,6 +25,7 @@ import { gateTable } from '../circuit/gates.ts';
 import { applyMatrixInto, baseMatrix } from '../circuit/unitary.ts';
 import type { Contract } from '../contract.ts';
 import { InputError } from '../input-error.ts';
+import { mul } from '../numeric/complex-matrix.ts';
 import { entering, isAnnotated, leaving } from './annotations.ts';
 
 /** 2^24 complex numbers, 256 MiB, for each of the two circuits. */
@@ -65,6 +66,12 @@ export function unfold(circuit: Circuit, contract: Contract): Unfolded {
   return run.finish();
 }
 
+/** Gates are applied to this many columns at a time. */
+const BLOCK_COLUMNS = 16;
+
+/** A matrix for the rows where (row & mask) = value, in the axes of the moment. */
+type Waiting = { matrix: Float64Array; targets: readonly number[]; mask: number; value: number };
+
 class Unfolding {
   private data: Float64Array = new Float64Array([1, 0]);
   private axes = 0;
@@ -74,6 +81,7 @@ class Unfolding {
   private readonly outputAxis: Int32Array;
   private readonly entered: Set<number> = new Set();
   private readonly bits: BitExpression[];
+  private readonly pending: Waiting[] = [];
   private readonly circuit: Circuit;
   private readonly contract: Contract;
   private readonly isAnnotated: boolean;
@@ -95,6 +103,7 @@ class Unfolding {
 
   private start(rule: 'any' | 'zero', input: number): number {
     if (rule === 'zero') return this.addAxis();
+    this.flush();
     this.checkSize(2);
     const c = 2 ** this.columnInputs.length;
     const rows = 2 ** this.axes;
@@ -119,6 +128,7 @@ class Unfolding {
 
   /** A new axis in |0>. */
   private addAxis(isCopy = false): number {
+    this.flush();
     this.checkSize(1);
     const c = 2 ** this.columnInputs.length;
     const rows = 2 ** this.axes;
@@ -252,9 +262,10 @@ class Unfolding {
     const read = bitsOf(condition);
     if (!condition || read.length === 0) {
       if (condition && !evaluateBits(condition, () => false)) return;
-      applyMatrixInto(this.data, matrix, targets, this.axes, columns, mask, value);
+      this.pending.push({ matrix, targets, mask, value });
       return;
     }
+    this.flush();
     for (const axis of read) {
       if (targets.includes(axis)) {
         throw new InputError({
@@ -283,6 +294,35 @@ class Unfolding {
     }
   }
 
+  /** Applies the gates that wait, to a few columns at a time so that these stay in the cache. */
+  private flush(): void {
+    const waiting = joined(this.pending.splice(0), this.axes);
+    if (waiting.length === 0) return;
+    const columns = 2 ** this.columnInputs.length;
+    const apply = (data: Float64Array, width: number): void => {
+      for (const { matrix, targets, mask, value } of waiting) {
+        applyMatrixInto(data, matrix, targets, this.axes, width, mask, value);
+      }
+    };
+    const parts = 2 ** (this.axes + 1);
+    if (columns <= BLOCK_COLUMNS || waiting.length < 4) {
+      apply(this.data, columns);
+      return;
+    }
+    const block = new Float64Array(parts * BLOCK_COLUMNS);
+    for (let first = 0; first < columns; first += BLOCK_COLUMNS) {
+      for (let row = 0; row < parts; row++) {
+        const from = row * columns + first;
+        block.set(this.data.subarray(from, from + BLOCK_COLUMNS), row * BLOCK_COLUMNS);
+      }
+      apply(block, BLOCK_COLUMNS);
+      for (let row = 0; row < parts; row++) {
+        const from = row * BLOCK_COLUMNS;
+        this.data.set(block.subarray(from, from + BLOCK_COLUMNS), row * columns + first);
+      }
+    }
+  }
+
   private overAxes(expression: BitExpression): BitExpression {
     switch (expression.kind) {
       case 'constant':
@@ -297,6 +337,7 @@ class Unfolding {
   }
 
   finish(): Unfolded {
+    this.flush();
     const { globalPhase } = this.circuit;
     if (globalPhase !== 0) {
       const half = this.data.length / 2;
@@ -325,6 +366,30 @@ class Unfolding {
       unfoldedWires: this.fresh,
     };
   }
+}
+
+/** Gates on one target in a row are one gate. */
+function joined(waiting: readonly Waiting[], axes: number): Waiting[] {
+  const out: Waiting[] = [];
+  /** For each target the place in `out` of a gate on it alone that nothing has followed yet. */
+  const open = new Map<number, number>();
+  for (const gate of waiting) {
+    const [target] = gate.targets;
+    if (gate.mask === 0 && gate.targets.length === 1) {
+      const at = open.get(target!);
+      if (at !== undefined) {
+        out[at] = { ...out[at]!, matrix: mul(gate.matrix, out[at]!.matrix, 2) };
+        continue;
+      }
+      open.set(target!, out.length);
+    } else {
+      for (const axis of open.keys()) {
+        if (gate.targets.includes(axis) || gate.mask & (2 ** (axes - 1 - axis))) open.delete(axis);
+      }
+    }
+    out.push(gate);
+  }
+  return out;
 }
 
 function tooLarge(bits: number, file: string): InputError {

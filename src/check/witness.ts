@@ -2,18 +2,23 @@
  * Finds an input on which two different circuits can be told apart, and the measurement that shows it.
  *
  * Inputs tried: basis states, then product states of 0, 1, +, +i on the `any` inputs, all of them up to
- * `INPUTS_MAX` and a seeded sample beyond (products span all operators, so some product input shows any
- * difference). Measurements tried: the observed bits with the kept outputs in the Z basis; each kept output in the
+ * `ALL_INPUTS_MAX`, and beyond those of a seeded sample whose outputs are furthest apart (products span all operators, so some
+ * product input shows any difference). Measurements tried: the observed bits with the kept outputs in the Z basis; each kept output in the
  * X, Y and Z basis; parities of pairs of kept outputs; whole strings in random product bases.
  * Choice: the largest difference found, but a simpler measurement or input wins when it shows at least half of it.
  * Convention: inputs and outputs are named by the wires of the original: `q[0]=+i` means (|0> + i |1>)/sqrt2; `q[1]:X=1`
  * means outcome 1 of a measurement in the X basis, whose outcome 1 is |->; a bare bit string lists the bits.
  */
+import { innerProduct, normSquared } from '../numeric/complex-matrix.ts';
 import { random } from '../numeric/random.ts';
 import type { Witness } from '../reports.ts';
 import type { Observed } from './observed.ts';
 
 const INPUTS_MAX = 1024;
+/** Up to this many product inputs all of them are measured on. */
+const ALL_INPUTS_MAX = 64;
+/** Beyond, those that are furthest apart are. */
+const MEASURED_INPUTS = 32;
 const HALF = Math.SQRT1_2;
 /** Amplitudes of 0, 1, +, +i. */
 const STATES = [
@@ -53,9 +58,7 @@ export function findWitness(
       if (isBetter || (candidate.complexity === best.complexity && mine > its)) best = candidate;
     }
   };
-  for (const input of productInputs(names.inputs.length, seed)) {
-    const a = outputStates(original, input);
-    const b = outputStates(rewritten, input);
+  for (const { input, a, b } of promising(original, rewritten, names.inputs.length, seed)) {
     const shown = inputText(names, input);
     const simple = input.filter((s) => s > 1).length;
     for (const { output, p, q, complexity } of measurements(a, b, names, seed)) {
@@ -73,21 +76,55 @@ export function findWitness(
   return { input, output, probabilityOriginal, probabilityRewritten };
 }
 
-function* productInputs(n: number, seed: number): Generator<number[]> {
-  const basis = 2 ** n;
-  if (4 ** n <= INPUTS_MAX) {
-    for (let k = 0; k < 4 ** n; k++) {
-      yield Array.from({ length: n }, (_, w) => Math.floor(k / 4 ** (n - 1 - w)) % 4);
-    }
-    return;
+type Tried = { input: readonly number[]; a: Ensemble; b: Ensemble };
+
+/** The inputs whose outputs are furthest apart, some of them basis states; all of them where there are few. */
+function promising(original: Observed, rewritten: Observed, n: number, seed: number): Tried[] {
+  const inputs = productInputs(n, seed);
+  const tried = inputs.map((input): Tried & { apart: number } => {
+    const [a, b] = [outputStates(original, input), outputStates(rewritten, input)];
+    return { input, a, b, apart: distanceOf(a, b) };
+  });
+  if (4 ** n <= ALL_INPUTS_MAX) return tried;
+  const isBasis = ({ input }: Tried): boolean => input.every((state) => state < 2);
+  const sorted = tried.sort((x, y) => y.apart - x.apart);
+  return [
+    ...sorted.filter(isBasis).slice(0, MEASURED_INPUTS / 2),
+    ...sorted.filter((one) => !isBasis(one)).slice(0, MEASURED_INPUTS / 2),
+  ];
+}
+
+function productInputs(n: number, seed: number): number[][] {
+  if (4 ** n <= ALL_INPUTS_MAX) {
+    return Array.from({ length: 4 ** n }, (_, k) =>
+      Array.from({ length: n }, (_, w) => Math.floor(k / 4 ** (n - 1 - w)) % 4),
+    );
   }
-  for (let k = 0; k < Math.min(basis, INPUTS_MAX / 2); k++) {
-    yield Array.from({ length: n }, (_, w) => (k >> (n - 1 - w)) & 1);
-  }
+  const basis = Array.from({ length: Math.min(2 ** n, INPUTS_MAX / 2) }, (_, k) =>
+    Array.from({ length: n }, (_, w) => (k >> (n - 1 - w)) & 1),
+  );
   const draw = random(seed, 'witness');
-  for (let k = 0; k < INPUTS_MAX / 8; k++) {
-    yield Array.from({ length: n }, () => Math.floor(4 * draw()));
+  // each of these costs 4^n
+  const products = Math.max(16, Math.min(INPUTS_MAX / 8, 2 ** 25 / 4 ** n));
+  const drawn = Array.from({ length: products }, () =>
+    Array.from({ length: n }, () => Math.floor(4 * draw())),
+  );
+  return [...basis, ...drawn];
+}
+
+/** Squared distance of two ensembles up to one phase; where their columns differ in number, that of their probabilities. */
+function distanceOf(a: Ensemble, b: Ensemble): number {
+  let [re, im, norms, apart] = [0, 0, 0, 0];
+  for (const key of new Set([...a.keys(), ...b.keys()])) {
+    const [x, y] = [a.get(key), b.get(key)];
+    if (x && y && x.columns === y.columns) {
+      const [p, q] = innerProduct(x.states, y.states);
+      re += p;
+      im += q;
+      norms += normSquared(x.states) + normSquared(y.states);
+    } else apart += Math.abs((x ? normSquared(x.states) : 0) - (y ? normSquared(y.states) : 0));
   }
+  return apart + norms - 2 * Math.hypot(re, im);
 }
 
 function inputText({ inputs, hasZeroInputs }: WitnessNames, states: readonly number[]): string {
@@ -103,6 +140,7 @@ function outputStates(observed: Observed, input: readonly number[]): Ensemble {
   const c = 2 ** input.length;
   const k = observed.rows / c;
   const [re, im] = [new Float64Array(c), new Float64Array(c)];
+  const support: number[] = [];
   for (let state = 0; state < c; state++) {
     let [x, y] = [1, 0];
     input.forEach((s, w) => {
@@ -112,14 +150,14 @@ function outputStates(observed: Observed, input: readonly number[]): Ensemble {
     });
     re[state] = x;
     im[state] = y;
+    if (x !== 0 || y !== 0) support.push(state);
   }
   const out: Ensemble = new Map();
   for (const [key, { matrix, columns }] of observed.outcomes) {
     const half = observed.rows * columns;
     const states = new Float64Array(2 * k * columns);
     for (let row = 0; row < k; row++) {
-      for (let state = 0; state < c; state++) {
-        if (re[state] === 0 && im[state] === 0) continue;
+      for (const state of support) {
         const from = (row * c + state) * columns;
         for (let e = 0; e < columns; e++) {
           const [x, y] = [matrix[from + e]!, matrix[half + from + e]!];
@@ -167,38 +205,43 @@ function* strings(
   bases: readonly number[],
   complexity: number,
 ): Generator<Shown> {
-  const [p, q] = [distribution(a, bases), distribution(b, bases)];
-  let best: { key: string; p: number; q: number } | undefined;
-  for (const key of new Set([...p.keys(), ...q.keys()])) {
-    const row = { key, p: p.get(key) ?? 0, q: q.get(key) ?? 0 };
-    if (!best || Math.abs(row.p - row.q) > Math.abs(best.p - best.q) + 1e-15) best = row;
+  let best: { key: string; row: number; p: number; q: number } | undefined;
+  for (const key of new Set([...a.keys(), ...b.keys()])) {
+    const [p, q] = [probabilities(a.get(key), bases), probabilities(b.get(key), bases)];
+    for (let row = 0; row < 2 ** bases.length; row++) {
+      const [x, y] = [p[row] ?? 0, q[row] ?? 0];
+      if (best && Math.abs(x - y) <= Math.abs(best.p - best.q) + 1e-15) continue;
+      best = { key, row, p: x, q: y };
+    }
   }
   if (!best) return;
-  const bitCount = names.bits.length;
+  const { key, row, p, q } = best;
   const parts = [
-    ...names.bits.map((name, k) => `${name}=${best.key[k]}`),
+    ...names.bits.map((name, k) => `${name}=${key[k]}`),
     ...names.outputs.map(
-      (name, k) => `${name}:${BASIS_NAMES[bases[k]!]}=${best.key[bitCount + k]}`,
+      (name, k) => `${name}:${BASIS_NAMES[bases[k]!]}=${(row >> (bases.length - 1 - k)) & 1}`,
     ),
   ];
-  yield { output: parts.join(' '), p: best.p, q: best.q, complexity };
+  yield { output: parts.join(' '), p, q, complexity };
 }
 
-function distribution(ensemble: Ensemble, bases: readonly number[]): Map<string, number> {
-  const out = new Map<string, number>();
+/** Of every string of the kept outputs, measured in these bases. */
+function probabilities(
+  one: { states: Float64Array; columns: number } | undefined,
+  bases: readonly number[],
+): Float64Array {
   const n = bases.length;
-  for (const [key, { states, columns }] of ensemble) {
-    const turned = states.slice();
-    bases.forEach((basis, wire) => {
-      if (basis > 0) turnToBasis(turned, n, wire, basis, columns);
-    });
-    const half = turned.length / 2;
-    for (let row = 0; row < 2 ** n; row++) {
-      let p = 0;
-      for (let e = row * columns; e < (row + 1) * columns; e++) {
-        p += turned[e]! ** 2 + turned[half + e]! ** 2;
-      }
-      if (p > 0) out.set(key + (n > 0 ? row.toString(2).padStart(n, '0') : ''), p);
+  const out = new Float64Array(2 ** n);
+  if (!one) return out;
+  const { columns } = one;
+  const turned = bases.some((basis) => basis > 0) ? one.states.slice() : one.states;
+  bases.forEach((basis, wire) => {
+    if (basis > 0) turnToBasis(turned, n, wire, basis, columns);
+  });
+  const half = turned.length / 2;
+  for (let row = 0; row < out.length; row++) {
+    for (let e = row * columns; e < (row + 1) * columns; e++) {
+      out[row]! += turned[e]! ** 2 + turned[half + e]! ** 2;
     }
   }
   return out;
@@ -237,11 +280,26 @@ function singleOutput(
   wire: number,
   basis: number,
 ): Shown {
-  const bases = names.outputs.map((_, k) => (k === wire ? basis : 0));
-  const at = names.bits.length + wire;
+  const n = names.outputs.length;
+  const stride = 2 ** (n - 1 - wire);
+  // p(1) = (1 - <Z>)/2, and likewise with X and Y: from the overlaps of the halves with the wire in |0> and |1>
   const sumOf = (ensemble: Ensemble): number => {
     let sum = 0;
-    for (const [key, p] of distribution(ensemble, bases)) if (key[at] === '1') sum += p;
+    for (const { states, columns } of ensemble.values()) {
+      const half = states.length / 2;
+      for (let row = 0; row < 2 ** n; row++) {
+        if (row & stride) continue;
+        for (let e = 0; e < columns; e++) {
+          const [p, q] = [row * columns + e, (row + stride) * columns + e];
+          const [ar, ai, br, bi] = [states[p]!, states[half + p]!, states[q]!, states[half + q]!];
+          if (basis === 0) sum += br * br + bi * bi;
+          else {
+            const cross = basis === 1 ? ar * br + ai * bi : ar * bi - ai * br;
+            sum += (ar * ar + ai * ai + br * br + bi * bi) / 2 - cross;
+          }
+        }
+      }
+    }
     return sum;
   };
   const output = `${names.outputs[wire]}:${BASIS_NAMES[basis]}=1`;

@@ -7,6 +7,7 @@ import type {
   DistanceReport,
   FitRow,
   NarrowReport,
+  Stretch,
   SurveyReport,
 } from '../reports.ts';
 import { outputColours as pc } from './colours.ts';
@@ -52,6 +53,12 @@ function small(x: number): string {
   return Math.abs(x) >= 0.001 && Math.abs(x) < 1e4
     ? Number(x.toPrecision(4)).toString()
     : x.toExponential(2);
+}
+
+function place(stretch: Stretch): string {
+  if (!stretch) return 'no gate';
+  const { from, to } = stretch;
+  return from === to ? `line ${from}` : `lines ${from} to ${to}`;
 }
 
 function wires(count: number): string {
@@ -211,9 +218,11 @@ function showCompare(report: CompareReport): string {
       `  probability of ${witness.output}: ${witness.probabilityOriginal.toPrecision(12)} in the original, ${witness.probabilityRewritten.toPrecision(12)} in the rewritten circuit`,
     );
   }
-  if (report.where && (report.where.original !== null || report.where.rewritten !== null)) {
-    const place = (line: number | null): string => (line === null ? 'its end' : `line ${line}`);
-    lines.push(`first gates without a counterpart: ${place(report.where.original)} of the original, ${place(report.where.rewritten)} of the rewritten circuit`); // biome-ignore format: one sentence
+  if (report.where?.original || report.where?.rewritten) {
+    const { original, rewritten } = report.where;
+    lines.push(
+      `they part at ${place(original)} of the original and ${place(rewritten)} of the rewritten circuit`,
+    );
   }
   if (relabelling) lines.push(`outputs relabelled: ${relabelling.join(' ')}`);
   return [...lines, ...noteLines(report.notes), ''].join('\n');

@@ -3,18 +3,23 @@
  *
  * Method: published networks where there are good ones (Toffoli in 6 CX: Nielsen, Chuang, figure 4.9; a relative-phase
  * Toffoli in 3 CX: Song, Klappenecker, quant-ph/0312225); controlled gates by the square-root recursion of Barenco et al.,
- * PRA 52, 3457 (1995), lemmas 6.1 and 7.5. Phases are kept, because they matter under a control.
+ * PRA 52, 3457 (1995), lemmas 6.1 and 7.5. Phases are kept, because they matter under a control. Matrices on three wires and
+ * more take the quantum Shannon decomposition (`shannon.ts`).
  * Cost: controlled gates with k controls take about 3^k two-wire gates; `CONTROLS_MAX` is the limit here.
- * Fails: InputError for more controls, and for matrices on three wires or more, which need a fit.
+ * Fails: InputError for more controls, and for matrices on more than `MATRIX_WIRES_MAX` wires.
  */
 import { type GateOperation, gate, unitaryGate } from '../circuit/circuit.ts';
 import { gateTable } from '../circuit/gates.ts';
-import { baseMatrix } from '../circuit/unitary.ts';
+import { applyGateInto, baseMatrix, gateMatrix } from '../circuit/unitary.ts';
 import { InputError } from '../input-error.ts';
-import { adjoint } from '../numeric/complex-matrix.ts';
+import { adjoint, identity } from '../numeric/complex-matrix.ts';
+import { hilbertSchmidtDistance } from '../numeric/distance.ts';
 import { unitaryPower } from '../numeric/unitary-eigen.ts';
+import { shannonGates } from './shannon.ts';
 
 export const CONTROLS_MAX = 8;
+/** Matrices on more wires are refused: they take more than 30,000 entanglers. */
+export const MATRIX_WIRES_MAX = 8;
 
 /** The same gate in gates on at most two wires without extra controls; the phase is exact. */
 export function decompose(operation: GateOperation): GateOperation[] {
@@ -34,19 +39,30 @@ export function decompose(operation: GateOperation): GateOperation[] {
     return network.flatMap((step) => decompose(underControls(step, outer)));
   }
   if (inner.length === 1) return controlledOneWire(outer, inner[0]!, baseMatrix(operation));
-  if (inner.length === 2 && outer.length > 0) {
-    throw tooLarge(operation, `a controlled two-wire gate ${name} without a known network`);
-  }
-  throw tooLarge(operation, `a gate on ${wires.length} wires without a known network`);
+  if (wires.length > MATRIX_WIRES_MAX) throw tooLarge(operation);
+  return fromMatrix(gateMatrix(operation), wires);
 }
 
-function tooLarge({ line, column }: GateOperation, what: string): InputError {
+/** The gates of a matrix, with its phase on the first of them. */
+function fromMatrix(matrix: Float64Array, wires: readonly number[]): GateOperation[] {
+  const operations = shannonGates(matrix, wires.length);
+  const made = identity(2 ** wires.length);
+  for (const step of operations) applyGateInto(made, step, wires.length, 2 ** wires.length);
+  const { phase } = hilbertSchmidtDistance(made, matrix);
+  const [re, im] = [Math.cos(phase), Math.sin(phase)];
+  const turn = unitaryGate(Float64Array.from([re, 0, 0, re, im, 0, 0, im]), [0]);
+  return [turn, ...operations].map((step) => ({
+    ...step,
+    wires: step.wires.map((wire) => wires[wire]!),
+  }));
+}
+
+function tooLarge({ name, wires, line, column }: GateOperation): InputError {
   return new InputError({
     code: 'no-network',
-    message: `expected gates that can be written in native gates exactly, got ${what}`,
+    message: `number of wires of a gate without a known network must be at most ${MATRIX_WIRES_MAX}, got ${wires.length} for ${name}`,
     ...(line === undefined ? {} : { line }),
     ...(column === undefined ? {} : { column }),
-    hint: 'wiregauge build makes native gates for any unitary',
   });
 }
 

@@ -2,6 +2,7 @@ import { describe, expect, test } from 'vitest';
 import { compareCircuits } from '../../src/check/compare.ts';
 import { compareGateByGate } from '../../src/check/gate-by-gate.ts';
 import { bitPairs } from '../../src/check/observation.ts';
+import { sidesOf } from '../../src/check/sides.ts';
 import {
   type Circuit,
   emptyCircuit,
@@ -43,8 +44,10 @@ function narrowed(circuit: Circuit, options: ContractOptions = {}): Circuit {
   return readCircuit(writeCircuit(slim), 'narrowed.qasm').circuit;
 }
 
-const proof = (a: Circuit, b: Circuit, options: ContractOptions = {}) =>
-  compareGateByGate(a, b, contractOf(a, options), bitPairs(a, b));
+const proof = (a: Circuit, b: Circuit, options: ContractOptions = {}) => {
+  const sides = sidesOf(a, b, contractOf(a, options), bitPairs(a, b));
+  return sides && compareGateByGate(sides);
+};
 
 /** One small wrong done to a gate, a condition or an order. */
 function mutated({ operations, ...rest }: Circuit, draw: Random): Circuit | null {
@@ -134,7 +137,7 @@ describe('what is the same is proved', () => {
   });
 });
 
-test('where two circuits begin to differ: the lines of the first gates without a counterpart', () => {
+test('where two circuits part: one angle off by 1e-6 among 300 gates on ten wires', () => {
   const lines = ['OPENQASM 3;', 'include "stdgates.inc";', 'qubit[10] q;'];
   const draw = random(13, 'where');
   for (let k = 0; k < 150; k++) {
@@ -149,7 +152,7 @@ test('where two circuits begin to differ: the lines of the first gates without a
   const line = lines[at]!.startsWith('ry') ? at + 1 : at;
   if (lines[at]!.startsWith('ry')) {
     expect(report.distance!.hilbertSchmidt / 1.25e-13).toBeCloseTo(1, 3);
-    expect(report.where).toEqual({ original: line, rewritten: line });
+    expect(report.where).toEqual({ original: { from: line, to: line }, rewritten: { from: line, to: line } }); // biome-ignore format: one check
   } else throw new Error('the line to spoil must be a rotation');
 });
 
