@@ -102,6 +102,8 @@ export function endsOf(a: Lines, { outputs }: Contract): Ends {
     if (rule === 'dropped') isDropped.add(line);
   });
   for (const line of a.lineOfBit) if (line >= 0) isMeasured.add(line);
+  // nobody keeps the qubit, but its outcome is in a bit that somebody sees
+  for (const line of isMeasured) isDropped.delete(line);
   return { isMeasured, isDropped };
 }
 
