@@ -4,14 +4,14 @@
  *
  * Method: what both begin with, up to commutation, is taken out (`cancel` of `gate-by-gate.ts`). What is left of each is applied
  * gate by gate to one random state; two beginnings agree when their states do, up to a phase, which is told by their overlaps
- * with three fixed random vectors. The last two beginnings that agree are found by searching the sorted overlaps.
+ * with two fixed random vectors. The last two beginnings that agree are found by searching the sorted overlaps.
  * Then the same from the ends. Result: the lines of the gates that are left; null for a circuit that has none there; no
  * answer where the circuits are no gates on lines. A gate in a stretch may be right; the stretches as a whole differ.
  */
 import type { Circuit } from '../circuit/circuit.ts';
 import { applyMatrixInto } from '../circuit/unitary.ts';
 import type { Contract } from '../contract.ts';
-import { adjoint } from '../numeric/complex-matrix.ts';
+import { adjoint, normSquared } from '../numeric/complex-matrix.ts';
 import { normal, type Random, random } from '../numeric/random.ts';
 import type { Stretch } from '../reports.ts';
 import { isAnnotated } from './annotations.ts';
@@ -21,10 +21,12 @@ import { endsOf, visible } from './sides.ts';
 
 /** Gates that differ by no more count as the same one here. */
 const EQUAL_ANGLE = 1e-11;
-/** States of this many lines are followed; beyond, what is left over is taken as it is. */
+/** (Gates) x (amplitudes) that are followed at most; beyond, what is left over is taken as it is. */
+const WORK_MAX = 2 ** 30;
+/** With more lines than this only those that the gates are on are followed. */
 const LINES_MAX = 12;
 const GATES_MAX = 20_000;
-const OVERLAPS = 3;
+const OVERLAPS = 2;
 const SAME_OVERLAP = 1e-9;
 
 export type Parting = { original: Stretch; rewritten: Stretch };
@@ -81,7 +83,8 @@ function lastAgreement(
   const isSmall = count <= LINES_MAX;
   const used = new Set([...left, ...right].flatMap(({ lines }) => lines));
   const all = Array.from({ length: count }, (_, line) => line).filter((line) => isSmall || used.has(line)); // biome-ignore format: one list
-  if (all.length === 0 || all.length > LINES_MAX) return [0, 0];
+  const work = (left.length + right.length) * 2 ** all.length;
+  if (all.length === 0 || work > WORK_MAX) return [0, 0];
   // with all lines at hand inputs that start in |0> do so here; otherwise the state in the middle is any
   const isZero = (line: number): boolean => isSmall && isZeroInput(line);
   const draw = random(1, 'where');
@@ -169,6 +172,6 @@ function randomState(isZero: readonly boolean[], draw: Random): Float64Array {
     state[k] = normal(draw);
     state[d + k] = normal(draw);
   }
-  const length = Math.hypot(...state);
+  const length = Math.sqrt(normSquared(state));
   return state.map((x) => x / length);
 }

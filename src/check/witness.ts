@@ -20,6 +20,8 @@ const ALL_INPUTS_MAX = 64;
 /** Beyond, those that are furthest apart are. */
 const MEASURED_INPUTS = 32;
 const HALF = Math.SQRT1_2;
+/** Whole strings in random bases are tried up to this many of them. */
+const TURNED_ROWS_MAX = 2 ** 14;
 /** Amplitudes of 0, 1, +, +i. */
 const STATES = [
   [1, 0, 0, 0],
@@ -182,9 +184,8 @@ function* measurements(
   const kept = names.outputs.length;
   const allZ = new Array<number>(kept).fill(0);
   yield* strings(a, b, names, allZ, 2);
-  for (let wire = 0; wire < kept; wire++) {
-    for (const basis of [0, 1, 2]) yield singleOutput(a, b, names, wire, basis);
-  }
+  yield* singleOutputs(a, b, names);
+  if (2 ** kept > TURNED_ROWS_MAX) return;
   const draw = random(seed, 'bases');
   for (let k = 0; k < Math.min(6, 3 ** kept - 1); k++) {
     yield* strings(
@@ -273,35 +274,33 @@ function turnToBasis(
   }
 }
 
-function singleOutput(
-  a: Ensemble,
-  b: Ensemble,
-  names: WitnessNames,
-  wire: number,
-  basis: number,
-): Shown {
+/** Each kept output by itself in the Z, X and Y basis. */
+function* singleOutputs(a: Ensemble, b: Ensemble, names: WitnessNames): Generator<Shown> {
   const n = names.outputs.length;
+  for (const [wire, name] of names.outputs.entries()) {
+    const [p, q] = [outcomesOfOne(a, n, wire), outcomesOfOne(b, n, wire)];
+    for (const [basis, letter] of BASIS_NAMES.entries()) {
+      yield { output: `${name}:${letter}=1`, p: p[basis]!, q: q[basis]!, complexity: 1 };
+    }
+  }
+}
+
+/** Probabilities of outcome 1 of one wire in the Z, X and Y basis: from the overlap of the halves with it in |0> and |1>. */
+function outcomesOfOne(ensemble: Ensemble, n: number, wire: number): [number, number, number] {
   const stride = 2 ** (n - 1 - wire);
-  // p(1) = (1 - <Z>)/2, and likewise with X and Y: from the overlaps of the halves with the wire in |0> and |1>
-  const sumOf = (ensemble: Ensemble): number => {
-    let sum = 0;
-    for (const { states, columns } of ensemble.values()) {
-      const half = states.length / 2;
-      for (let row = 0; row < 2 ** n; row++) {
-        if (row & stride) continue;
-        for (let e = 0; e < columns; e++) {
-          const [p, q] = [row * columns + e, (row + stride) * columns + e];
-          const [ar, ai, br, bi] = [states[p]!, states[half + p]!, states[q]!, states[half + q]!];
-          if (basis === 0) sum += br * br + bi * bi;
-          else {
-            const cross = basis === 1 ? ar * br + ai * bi : ar * bi - ai * br;
-            sum += (ar * ar + ai * ai + br * br + bi * bi) / 2 - cross;
-          }
-        }
+  let [zeros, ones, re, im] = [0, 0, 0, 0];
+  for (const { states, columns } of ensemble.values()) {
+    const half = states.length / 2;
+    const run = stride * columns;
+    for (let start = 0; start < half; start += 2 * run) {
+      for (let p = start; p < start + run; p++) {
+        const [ar, ai, br, bi] = [states[p]!, states[half + p]!, states[p + run]!, states[half + p + run]!]; // biome-ignore format: one list
+        zeros += ar * ar + ai * ai;
+        ones += br * br + bi * bi;
+        re += ar * br + ai * bi;
+        im += ar * bi - ai * br;
       }
     }
-    return sum;
-  };
-  const output = `${names.outputs[wire]}:${BASIS_NAMES[basis]}=1`;
-  return { output, p: sumOf(a), q: sumOf(b), complexity: 1 };
+  }
+  return [ones, (zeros + ones) / 2 - re, (zeros + ones) / 2 - im];
 }
