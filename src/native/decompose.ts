@@ -2,10 +2,10 @@
  * Takes gates on three wires or more, and gates with extra controls, apart into gates on one and two wires, exactly.
  *
  * Method: published networks where there are good ones (Toffoli in 6 CX: Nielsen, Chuang, figure 4.9; a relative-phase
- * Toffoli in 3 CX: Song, Klappenecker, quant-ph/0312225); controlled gates by the square-root recursion of Barenco et al.,
- * PRA 52, 3457 (1995), lemmas 6.1 and 7.5. Phases are kept, because they matter under a control. Matrices on three wires and
+ * Toffoli in 3 CX: Song, Klappenecker, quant-ph/0312225); a single-wire gate under k controls is diagonal in its own basis and
+ * takes 2^(k+1) - 2 CX (`diagonal.ts`). Phases are kept, because they matter under a control. Matrices on three wires and
  * more take the quantum Shannon decomposition (`shannon.ts`).
- * Cost: controlled gates with k controls take about 3^k two-wire gates; `CONTROLS_MAX` is the limit here.
+ * Cost: `CONTROLS_MAX` controls take 510 CX; that is the limit here.
  * Fails: InputError for more controls, and for matrices on more than `MATRIX_WIRES_MAX` wires.
  */
 import { type GateOperation, gate, unitaryGate } from '../circuit/circuit.ts';
@@ -14,7 +14,8 @@ import { applyGateInto, baseMatrix, gateMatrix } from '../circuit/unitary.ts';
 import { InputError } from '../input-error.ts';
 import { adjoint, identity } from '../numeric/complex-matrix.ts';
 import { hilbertSchmidtDistance } from '../numeric/distance.ts';
-import { unitaryPower } from '../numeric/unitary-eigen.ts';
+import { unitaryEigen } from '../numeric/unitary-eigen.ts';
+import { diagonalGates } from './diagonal.ts';
 import { shannonGates } from './shannon.ts';
 
 export const CONTROLS_MAX = 8;
@@ -43,11 +44,19 @@ export function decompose(operation: GateOperation): GateOperation[] {
   return fromMatrix(gateMatrix(operation), wires);
 }
 
-/** The gates of a matrix, with its phase on the first of them. */
 function fromMatrix(matrix: Float64Array, wires: readonly number[]): GateOperation[] {
-  const operations = shannonGates(matrix, wires.length);
-  const made = identity(2 ** wires.length);
-  for (const step of operations) applyGateInto(made, step, wires.length, 2 ** wires.length);
+  return withPhase(shannonGates(matrix, wires.length), matrix, wires);
+}
+
+/** Gates on wires 0, 1, .. that make a matrix up to a phase: on `wires`, with the phase put right before them. */
+function withPhase(
+  operations: readonly GateOperation[],
+  matrix: Float64Array,
+  wires: readonly number[],
+): GateOperation[] {
+  const d = 2 ** wires.length;
+  const made = identity(d);
+  for (const step of operations) applyGateInto(made, step, wires.length, d);
   const { phase } = hilbertSchmidtDistance(made, matrix);
   const [re, im] = [Math.cos(phase), Math.sin(phase)];
   const turn = unitaryGate(Float64Array.from([re, 0, 0, re, im, 0, 0, im]), [0]);
@@ -162,18 +171,39 @@ function controlledOneWire(
       gate('h', [target]),
     ];
   }
-  // C^k(u) = C(v) C^{k-1}X C(v^dag) C^{k-1}X C^{k-1}(v), v^2 = u, with the last control taken apart
-  const v = unitaryPower(u, 2, 0.5);
-  const [last] = controls.slice(-1) as [number];
-  const others = controls.slice(0, -1);
-  const flip = controlledOneWire(others, last, gateTable.get('x')!.matrix([]));
-  return [
-    ...controlledOneWire([last], target, v),
-    ...flip,
-    ...controlledOneWire([last], target, adjoint(v, 2)),
-    ...flip,
-    ...controlledOneWire(others, target, v),
-  ];
+  return throughDiagonal(controls, target, u);
+}
+
+/** u = v diag v^dag: under controls the diagonal becomes one on all the wires, and v stays as it is. */
+function throughDiagonal(
+  controls: readonly number[],
+  target: number,
+  u: Float64Array,
+): GateOperation[] {
+  const { phases, vectors } = unitaryEigen(u, 2);
+  const wires = [...controls, target];
+  const d = 2 ** wires.length;
+  const diagonal = identity(d);
+  phases.forEach((phase, k) => {
+    const at = (d - 2 + k) * (d + 1);
+    diagonal[at] = Math.cos(phase);
+    diagonal[d * d + at] = Math.sin(phase);
+  });
+  const isOwn = isMatrix(u, 'x');
+  const [before, after] = isOwn
+    ? [gate('h', [target]), gate('h', [target])]
+    : [unitaryGate(adjoint(vectors, 2), [target]), unitaryGate(vectors, [target])];
+  if (isOwn) signLast(diagonal, d);
+  return [before, ...withPhase(diagonalGates(diagonal, wires.length), diagonal, wires), after];
+}
+
+/** Makes the last two entries 1 and -1, the eigenvalues of X on the columns of H. */
+function signLast(diagonal: Float64Array, d: number): void {
+  const last = (d - 1) * (d + 1);
+  diagonal[last - d - 1] = 1;
+  diagonal[last] = -1;
+  diagonal[d * d + last - d - 1] = 0;
+  diagonal[d * d + last] = 0;
 }
 
 function controlledMatrix(u: Float64Array): Float64Array {

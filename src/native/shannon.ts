@@ -19,6 +19,7 @@ import { nearestUnitary } from '../numeric/nearest-unitary.ts';
 import { unitaryEigen } from '../numeric/unitary-eigen.ts';
 import { canonical, cxCount } from './canonical.ts';
 import { flips, multiplexedRotation } from './multiplexed.ts';
+import { factorsOf } from './structure.ts';
 
 /** Entries below this count as zero when a block's structure is looked at. */
 const ZERO = 1e-14;
@@ -41,13 +42,17 @@ function piecesOf(u: Float64Array, wires: readonly number[]): GateOperation[] {
   if (isScalar(u, 2 ** wires.length)) return [];
   if (wires.length <= 2) return [unitaryGate(u, wires)];
   const m = 2 ** rest.length;
-  const quarters = quartersOf(u, m);
-  const [a, b, c, d] = quarters;
+  const [a, b, c, d] = quartersOf(u, m);
   if (isZero(b) && isZero(c)) return multiplexer(a, d, target!, rest);
   if (isZero(a) && isZero(d)) return [gate('x', [target!]), ...multiplexer(b, c, target!, rest)];
-  const product = factorOf(quarters, m);
-  if (product) {
-    return [unitaryGate(product.first, [target!]), ...piecesOf(product.second, rest)];
+  const factors = factorsOf(u, wires.length);
+  if (factors.length > 1) {
+    return factors.flatMap(({ wires: own, matrix }) =>
+      piecesOf(
+        matrix,
+        own.map((wire) => wires[wire]!),
+      ),
+    );
   }
   const { l1, l2, angles, r1, r2 } = cosineSine(u, m);
   const right = multiplexer(r1, r2, target!, rest);
@@ -124,63 +129,48 @@ function diagonalPhases(a: Float64Array, m: number): Float64Array {
   );
 }
 
-/** u = first x second, when all quarters are multiples of one unitary. */
-function factorOf(
-  quarters: readonly Float64Array[],
-  m: number,
-): { first: Float64Array; second: Float64Array } | undefined {
-  const squares = quarters.map((quarter) => quarter.reduce((sum, x) => sum + x * x, 0));
-  const largest = squares.indexOf(Math.max(...squares));
-  const scale = Math.sqrt(m / squares[largest]!);
-  const second = quarters[largest]!.map((x) => x * scale);
-  const first = new Float64Array(8);
-  for (const [k, quarter] of quarters.entries()) {
-    let [re, im] = [0, 0];
-    for (let at = 0; at < m * m; at++) {
-      const [x, y] = [second[at]!, second[m * m + at]!];
-      const [p, q] = [quarter[at]!, quarter[m * m + at]!];
-      re += x * p + y * q;
-      im += x * q - y * p;
-    }
-    [first[k], first[4 + k]] = [re / m, im / m];
-    for (let at = 0; at < m * m; at++) {
-      const [x, y] = [second[at]!, second[m * m + at]!];
-      const [p, q] = [first[k]!, first[4 + k]!];
-      if (Math.abs(quarter[at]! - p * x + q * y) > ZERO) return undefined;
-      if (Math.abs(quarter[m * m + at]! - p * y - q * x) > ZERO) return undefined;
-    }
-  }
-  return { first, second };
-}
-
 /**
- * Joins blocks on the last two wires that follow each other at once, and makes each but the last one fit for two CX: what
- * stands between them is diagonal on those wires or does not touch them, so that a diagonal passes.
+ * Joins blocks on one pair of wires that follow each other at once, and makes each but the last one fit for two CX: what stands
+ * between two of them is diagonal on those wires or does not touch them, so that a diagonal passes.
  */
 function withTwoEach(pieces: readonly GateOperation[]): GateOperation[] {
   const out: GateOperation[] = [];
-  let carried: Float64Array | null = null;
+  // by the place in the list of the block that takes it up
+  const carried = new Map<number, Float64Array>();
   const isBlock = ({ name, wires }: GateOperation): boolean => name === 'unitary' && wires.length === 2; // biome-ignore format: one rule
-  const last = pieces.findLastIndex(isBlock);
-  for (let k = 0; k < pieces.length; k++) {
-    const piece = pieces[k]!;
+  const nextBlock = (from: number, [first, second]: readonly number[]): number => {
+    for (let k = from; k < pieces.length; k++) {
+      const piece = pieces[k]!;
+      if (isBlock(piece) && piece.wires[0] === first && piece.wires[1] === second) return k;
+      if (!passes(piece, first!, second!)) return -1;
+    }
+    return -1;
+  };
+  pieces.forEach((piece, k) => {
     if (!isBlock(piece)) {
       out.push(piece);
-      continue;
+      return;
     }
-    let matrix: Float64Array = piece.matrix!; // a block carries its matrix
-    if (carried) matrix = mul(matrix, carried, 4);
-    carried = null;
-    const next = pieces[k + 1];
-    if (next && isBlock(next)) carried = matrix;
-    else if (k === last) out.push(unitaryGate(matrix, piece.wires));
-    else {
-      const { diagonal, rest } = withoutDiagonal(matrix);
-      carried = diagonal;
-      out.push(unitaryGate(rest, piece.wires));
+    const before = carried.get(k);
+    const matrix = before ? mul(piece.matrix!, before, 4) : piece.matrix!; // a block carries its matrix
+    const next = nextBlock(k + 1, piece.wires);
+    if (next === k + 1) {
+      carried.set(next, matrix);
+      return;
     }
-  }
+    const { diagonal, rest } =
+      next < 0 ? { diagonal: null, rest: matrix } : withoutDiagonal(matrix);
+    if (diagonal) carried.set(next, diagonal);
+    out.push(unitaryGate(rest, piece.wires));
+  });
   return out;
+}
+
+/** Whether a diagonal on two wires commutes with a gate: it is a control there, or elsewhere. */
+function passes({ name, wires }: GateOperation, first: number, second: number): boolean {
+  if (name === 'cz' || name === 'rz') return true;
+  const moved = name === 'cx' ? wires.slice(1) : wires;
+  return moved.every((wire) => wire !== first && wire !== second);
 }
 
 /**
