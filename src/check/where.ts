@@ -4,7 +4,7 @@
  *
  * Method: what both begin with, up to commutation, is taken out (`cancel` of `gate-by-gate.ts`). What is left of each is applied
  * gate by gate to one random state; two beginnings agree when their states do, up to a phase, which is told by their overlaps
- * with two fixed random vectors. The last two beginnings that agree are found by searching the sorted overlaps.
+ * with two fixed sparse random vectors. The last two beginnings that agree are found by searching the sorted overlaps.
  * Then the same from the ends. Result: the lines of the gates that are left; null for a circuit that has none there; no
  * answer where the circuits are no gates on lines. A gate in a stretch may be right; the stretches as a whole differ.
  */
@@ -27,6 +27,9 @@ const WORK_MAX = 2 ** 30;
 const LINES_MAX = 12;
 const GATES_MAX = 20_000;
 const OVERLAPS = 2;
+/** Entries of a probe that are not zero; with fewer a gate with many controls could miss them all. */
+const PROBE_ROWS = 512;
+type Probe = { at: Int32Array; weights: Float64Array };
 const SAME_OVERLAP = 1e-9;
 
 export type Parting = { original: Stretch; rewritten: Stretch };
@@ -89,12 +92,7 @@ function lastAgreement(
   const isZero = (line: number): boolean => isSmall && isZeroInput(line);
   const draw = random(1, 'where');
   const start = randomState(all.map(isZero), draw);
-  const probes = Array.from({ length: OVERLAPS }, () =>
-    randomState(
-      all.map(() => false),
-      draw,
-    ),
-  );
+  const probes = Array.from({ length: OVERLAPS }, () => probe(2 ** all.length, draw));
   const place = new Map(all.map((line, k) => [line, k]));
   if (isSmall) for (const gate of common) apply(gate, start, place);
   const [p, q] = [left, right].map((gates) => overlapsAlong(gates, start.slice(), place, probes)) as [Float64Array[], Float64Array[]]; // biome-ignore format: a pair
@@ -132,7 +130,7 @@ function overlapsAlong(
   gates: readonly LineGate[],
   state: Float64Array,
   place: ReadonlyMap<number, number>,
-  probes: readonly Float64Array[],
+  probes: readonly Probe[],
 ): Float64Array[] {
   const list = [overlaps(state, probes)];
   for (const gate of gates) {
@@ -150,16 +148,25 @@ function apply(
   applyMatrixInto(state, matrix, lines.map((line) => place.get(line)!), place.size, 1); // biome-ignore format: one call
 }
 
-function overlaps(state: Float64Array, probes: readonly Float64Array[]): Float64Array {
-  const d = state.length / 2;
-  return Float64Array.from(probes, (probe) => {
+function overlaps(state: Float64Array, probes: readonly Probe[]): Float64Array {
+  const half = state.length / 2;
+  return Float64Array.from(probes, ({ at, weights }) => {
     let [re, im] = [0, 0];
-    for (let k = 0; k < d; k++) {
-      re += probe[k]! * state[k]! + probe[d + k]! * state[d + k]!;
-      im += probe[k]! * state[d + k]! - probe[d + k]! * state[k]!;
-    }
+    at.forEach((row, k) => {
+      const [x, y] = [weights[2 * k]!, weights[2 * k + 1]!];
+      re += x * state[row]! + y * state[half + row]!;
+      im += x * state[half + row]! - y * state[row]!;
+    });
     return Math.hypot(re, im);
   });
+}
+
+/** A sparse random vector, scaled so that its overlaps are of the size of 1. */
+function probe(d: number, draw: Random): Probe {
+  const count = Math.min(d, PROBE_ROWS);
+  const at = Int32Array.from({ length: count }, (_, k) => (d <= PROBE_ROWS ? k : Math.min(d - 1, Math.floor(draw() * d)))); // biome-ignore format: one list
+  const scale = Math.sqrt(d / count);
+  return { at, weights: Float64Array.from({ length: 2 * count }, () => scale * normal(draw)) };
 }
 
 /** A random vector of unit length in which the lines marked are |0>; planar. */
