@@ -49,11 +49,11 @@ function randomContract(dice: Dice, wires: number): ContractOptions {
   if (kind < 2) return {};
   const inputOf = new Map<number, InputRule>();
   const outputOf = new Map<number, OutputRule>();
-  let room = 5;
+  let [anyRoom, keptRoom] = [3, 3];
   for (let wire = 0; wire < wires; wire++) {
-    inputOf.set(wire, dice.chance(0.6) && room-- > 0 ? 'any' : 'zero');
+    inputOf.set(wire, dice.chance(0.6) && anyRoom-- > 0 ? 'any' : 'zero');
     if (kind === 2) continue;
-    const isKept = dice.chance(0.6) && room-- > 0;
+    const isKept = dice.chance(0.6) && keptRoom-- > 0;
     outputOf.set(wire, isKept ? 'kept' : dice.pick(['measured', 'dropped'] as const));
   }
   if (kind === 2) return { inputOf, outputs: 'measured' };
@@ -82,7 +82,7 @@ function pairOf(k: number): Pair {
   const isRewriting = k % 2 === 0;
   const other = isRewriting
     ? rewritten(program, dice, wires, 2 + dice.below(5))
-    : { ...spoiled(program, dice, wires, 1 + dice.below(3)), bits: BITS };
+    : { ...spoiled(program, dice, wires, 2 + dice.below(4)), bits: BITS };
   const texts: [string, string] = [
     programText(program, wires, BITS),
     programText(other.program, wires, other.bits),
@@ -192,6 +192,25 @@ function checkWitness(
   const isRight = Math.abs(p - weight(first)) < 1e-11 && Math.abs(q - weight(second)) < 1e-11;
   expect({ ...shown, output, count: wanted.length > 0, isRight }).toEqual({ ...shown, output, count: true, isRight: true }); // biome-ignore format: one check
 }
+
+test('beyond dense size: a bit whose qubit nobody keeps is seen all the same', () => {
+  const text = (angle: number): string =>
+    programText(
+      [
+        ['gate', [], 'ry', [angle], [0]],
+        ['gate', [], 'h', [], [1]],
+        ['measure', 0, 0],
+        ['gate', [], 'cp', [0.3], [0, 1]],
+      ],
+      2,
+      BITS,
+    );
+  const [original, rewritten] = [read(text(0.5)), read(text(0.8))];
+  const contract = contractOf(original);
+  expect(contract.outputs).toEqual(['dropped', 'dropped']);
+  const answer = answerBeyondDense({ original, rewritten, contract, tolerance: COMPARE_TOLERANCE, relabel: false, seed: 1 }); // biome-ignore format: one question
+  expect(answer?.verdict).not.toBe('same');
+});
 
 describe('a kept output that is measured on its way', () => {
   const head = 'OPENQASM 3.0;\ninclude "stdgates.inc";\nqubit[2] q;\nbit[2] c;\n';

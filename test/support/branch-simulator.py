@@ -92,10 +92,13 @@ def merged(states):
         weights = np.sum(np.abs(state) ** 2, axis=0)
         state = state[:, weights > 1e-32]
         if state.shape[1] == 0: continue
-        if state.shape[1] > state.shape[0]:
-            state = np.linalg.qr(state.conj().T, mode='r').conj().T
-        joined[bits] = state
+        joined[bits] = squared(state)
     return joined
+
+
+def squared(m):
+    """The same m m^dagger with no more columns than rows."""
+    return m if m.shape[1] <= m.shape[0] else np.linalg.qr(m.conj().T, mode='r').conj().T
 
 
 def run(statements, states, lines):
@@ -106,6 +109,10 @@ def run(statements, states, lines):
             for bits, state in states.items():
                 chosen = then if value(condition, bits) else otherwise
                 after.extend(run(chosen, {bits: state}, lines).items())
+        elif kind == 'gate':
+            modifiers, name, angles, wires = rest
+            u = matrix(modifiers, name, angles)
+            after = [(bits, on_wires(state, u, wires, lines)) for bits, state in states.items()]
         else:
             for bits, state in states.items():
                 after.extend(step(kind, rest, bits, state, lines))
@@ -114,9 +121,6 @@ def run(statements, states, lines):
 
 
 def step(kind, rest, bits, state, lines):
-    if kind == 'gate':
-        modifiers, name, angles, wires = rest
-        return [(bits, on_wires(state, matrix(modifiers, name, angles), wires, lines))]
     if kind == 'assign':
         return [(bits[:rest[0]] + (value(rest[1], bits),) + bits[rest[0] + 1:], state)]
     zero = on_wires(state, np.diag([1, 0]), [rest[0]], lines)
@@ -148,7 +152,7 @@ def outcome(pair, statements):
     for values, state in final.items():
         t = state.reshape([2] * lines + [state.shape[1]]).transpose(keep + drop + [lines])
         seen.setdefault(values[:pair['bits']] + values[bits:], []).append(t.reshape(2 ** len(keep), -1))
-    return {key: np.concatenate(parts, axis=1) for key, parts in seen.items()}
+    return {key: squared(np.concatenate(parts, axis=1)) for key, parts in seen.items()}
 
 
 def compare(pair):
