@@ -17,6 +17,7 @@ import {
   BITS,
   type Dice,
   diceOf,
+  type Kind,
   programText,
   randomProgram,
   rewritten,
@@ -75,13 +76,13 @@ function measuredLast(program: readonly Statement[]): Set<number> {
 
 const read = (text: string): Circuit => readCircuit(text, 'valley.qasm').circuit;
 
-function pairOf(k: number): Pair {
-  const dice = diceOf(random(500, k));
+function pairOf(k: number, seed: number, kind: Kind): Pair {
+  const dice = diceOf(random(seed, k));
   const wires = 2 + dice.below(4);
-  const program = randomProgram(dice, wires, 5 + dice.below(16));
+  const program = randomProgram(dice, wires, 5 + dice.below(kind === 'any' ? 16 : 10), kind);
   const isRewriting = k % 2 === 0;
   const other = isRewriting
-    ? rewritten(program, dice, wires, 2 + dice.below(5))
+    ? rewritten(program, dice, wires, 2 + dice.below(5), kind)
     : { ...spoiled(program, dice, wires, 2 + dice.below(4)), bits: BITS };
   const texts: [string, string] = [
     programText(program, wires, BITS),
@@ -117,48 +118,63 @@ function verdictOf({ texts, contract }: Pair) {
   return { report, beyond: answerBeyondDense(question), original: a };
 }
 
+/** Both halves, rewritten and spoiled pairs, against the simulator; what came of them, counted. */
+function score(count: number, seed: number, kind: Kind) {
+  const pairs = Array.from({ length: count }, (_, k) => pairOf(k, seed, kind));
+  const truths = python(
+    SIMULATOR,
+    pairs.map(({ job }) => job),
+  ) as Truth[];
+  expect(truths.length).toBe(count);
+  const score = { same: 0, different: 0, witnesses: 0, distributions: 0, close: 0 };
+  const roads = new Map<string, number>();
+  pairs.forEach((pair, k) => {
+    const truth = truths[k]!;
+    const { report, beyond, original } = verdictOf(pair);
+    const shown = { texts: pair.texts, how: pair.how, contract: pair.contract };
+    // the simulator's own rewriting rules must hold, and what is different must be so clearly
+    if (pair.isRewriting) expect({ ...shown, isEqual: truth.trace < 1e-10 }).toEqual({ ...shown, isEqual: true }); // biome-ignore format: one check
+    const wanted = truth.trace < 1e-10 ? 'same' : 'different';
+    if (truth.trace >= 1e-10 && truth.trace < 1e-4) score.close++;
+    score[wanted]++;
+    const off = report.distance!.hilbertSchmidt - (1 - truth.fidelity);
+    const { verdict } = report;
+    expect({ ...shown, verdict, isOff: Math.abs(off) > 1e-11 }).toEqual({ ...shown, verdict: wanted, isOff: false }); // biome-ignore format: one check
+    if (beyond && beyond.verdict !== 'undecided') {
+      const { method } = beyond;
+      expect({ ...shown, method, verdict: beyond.verdict }).toEqual({ ...shown, method, verdict: wanted }); // biome-ignore format: one check
+      roads.set(`${method}: ${wanted}`, (roads.get(`${method}: ${wanted}`) ?? 0) + 1);
+    }
+    if (pair.job.any.length > 0 || pair.job.kept.length > 0 || pair.job.ended.length > 0) return;
+    score.distributions++;
+    checkDistribution(original, truth.weights[0], shown);
+    if (verdict === 'different') {
+      score.witnesses++;
+      checkWitness(report.witness!, truth.weights, shown);
+    }
+  });
+  console.log(
+    `dynamic programs (${kind}): ${JSON.stringify(score)}, other roads ${[...roads].map((r) => r.join(' ')).join(', ')}`,
+  );
+  expect(score.close).toBe(0);
+  return score;
+}
+
 pythonTest(
   `${PAIRS} pairs of random dynamic programs (seed 500)`,
   () => {
-    const pairs = Array.from({ length: PAIRS }, (_, k) => pairOf(k));
-    const truths = python(
-      SIMULATOR,
-      pairs.map(({ job }) => job),
-    ) as Truth[];
-    expect(truths.length).toBe(PAIRS);
-    const score = { same: 0, different: 0, witnesses: 0, distributions: 0, close: 0 };
-    const beyondScore = new Map<string, number>();
-    pairs.forEach((pair, k) => {
-      const truth = truths[k]!;
-      const { report, beyond, original } = verdictOf(pair);
-      const shown = { texts: pair.texts, how: pair.how, contract: pair.contract };
-      // the simulator's own rewriting rules must hold, and what is different must be so clearly
-      if (pair.isRewriting) expect({ ...shown, isEqual: truth.trace < 1e-10 }).toEqual({ ...shown, isEqual: true }); // biome-ignore format: one check
-      const wanted = truth.trace < 1e-10 ? 'same' : 'different';
-      if (truth.trace >= 1e-10 && truth.trace < 1e-4) score.close++;
-      score[wanted]++;
-      const off = report.distance!.hilbertSchmidt - (1 - truth.fidelity);
-      const { verdict } = report;
-      expect({ ...shown, verdict, isOff: Math.abs(off) > 1e-11 }).toEqual({ ...shown, verdict: wanted, isOff: false }); // biome-ignore format: one check
-      if (beyond && beyond.verdict !== 'undecided') {
-        const { method } = beyond;
-        expect({ ...shown, method, verdict: beyond.verdict }).toEqual({ ...shown, method, verdict: wanted }); // biome-ignore format: one check
-        beyondScore.set(method, (beyondScore.get(method) ?? 0) + 1);
-      }
-      if (pair.job.any.length > 0 || pair.job.kept.length > 0 || pair.job.ended.length > 0) return;
-      score.distributions++;
-      checkDistribution(original, truth.weights[0], shown);
-      if (verdict === 'different') {
-        score.witnesses++;
-        checkWitness(report.witness!, truth.weights, shown);
-      }
-    });
-    console.log(
-      `dynamic programs: ${JSON.stringify(score)}, other roads ${JSON.stringify([...beyondScore])}`,
-    );
-    expect(score.close).toBe(0);
-    expect(Math.min(score.same, score.different)).toBeGreaterThan(PAIRS / 4);
-    expect(Math.min(score.distributions, score.witnesses)).toBeGreaterThan(20);
+    const { same, different, distributions, witnesses } = score(PAIRS, 500, 'any');
+    expect(Math.min(same, different)).toBeGreaterThan(PAIRS / 4);
+    expect(Math.min(distributions, witnesses)).toBeGreaterThan(20);
+  },
+  { timeoutMs: 240_000 },
+);
+
+pythonTest(
+  '200 pairs of Clifford programs, of which tableaus prove a part (seed 501)',
+  () => {
+    const { same, different } = score(200, 501, 'clifford');
+    expect(Math.min(same, different)).toBeGreaterThan(30);
   },
   { timeoutMs: 240_000 },
 );

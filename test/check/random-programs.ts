@@ -61,9 +61,18 @@ function wiresOf(dice: Dice, wires: number, count: number): number[] {
   return Array.from({ length: count }, () => rest.splice(dice.below(rest.length), 1)[0]!);
 }
 
-function randomGate(dice: Dice, wires: number): Gate {
+const CLIFFORD = BASE.filter(([name, angles]) => angles === 0 && !/^t/.test(name));
+
+/** Which programs: of all gates and conditions, or of those that a tableau takes. */
+export type Kind = 'any' | 'clifford';
+
+function randomGate(dice: Dice, wires: number, kind: Kind): Gate {
   for (;;) {
-    const [name, angles, count] = dice.pick(BASE);
+    const [name, angles, count] = dice.pick(kind === 'any' ? BASE : CLIFFORD);
+    if (kind === 'clifford') {
+      if (count <= wires) return ['gate', [], name, [], wiresOf(dice, wires, count)];
+      continue;
+    }
     const modifiers: Modifier[] = [];
     if (dice.chance(0.15)) modifiers.push(dice.pick(['ctrl', 'negctrl'] as const));
     if (dice.chance(0.05)) modifiers.push('inv');
@@ -75,17 +84,30 @@ function randomGate(dice: Dice, wires: number): Gate {
   }
 }
 
-function randomCondition(dice: Dice, depth = 2): Condition {
+function randomCondition(dice: Dice, programs: Kind, depth = 2): Condition {
+  if (programs === 'clifford') {
+    const bit = (): Condition => ['bit', dice.below(BITS)];
+    return dice.chance(0.5) ? bit() : ['xor', bit(), bit()];
+  }
   const kind = dice.below(depth > 0 ? 9 : 4);
   if (kind < 4) return ['bit', dice.below(BITS)];
-  if (kind === 4) return ['not', randomCondition(dice, depth - 1)];
+  if (kind === 4) return ['not', randomCondition(dice, programs, depth - 1)];
   if (kind === 5) return ['equals', 0, BITS, dice.below(2 ** BITS)];
   const operator = kind < 8 ? 'xor' : dice.pick(['and', 'or'] as const);
-  return [operator, randomCondition(dice, depth - 1), randomCondition(dice, depth - 1)];
+  return [
+    operator,
+    randomCondition(dice, programs, depth - 1),
+    randomCondition(dice, programs, depth - 1),
+  ];
 }
 
 /** `room` bounds the measurements and resets, each of which doubles the branches. */
-export function randomProgram(dice: Dice, wires: number, length: number): Statement[] {
+export function randomProgram(
+  dice: Dice,
+  wires: number,
+  length: number,
+  programs: Kind = 'any',
+): Statement[] {
   let room = 6;
   const list = (count: number, depth: number): Statement[] =>
     Array.from({ length: count }, () => statement(depth));
@@ -93,19 +115,30 @@ export function randomProgram(dice: Dice, wires: number, length: number): Statem
     const kind = dice.below(20);
     if (kind < 4 && room-- > 0) return ['measure', dice.below(wires), dice.below(BITS)];
     if (kind < 6 && room-- > 0) return ['reset', dice.below(wires)];
-    if (kind === 6) return ['assign', dice.below(BITS), randomCondition(dice)];
+    if (kind === 6 && programs === 'any')
+      return ['assign', dice.below(BITS), randomCondition(dice, programs)];
+    if (kind < 11 && programs === 'clifford') {
+      return ['if', randomCondition(dice, programs), [randomGate(dice, wires, programs)], []];
+    }
     if (kind < 11 && depth > 0) {
       const otherwise = dice.chance(0.4) ? list(1, depth - 1) : [];
-      return ['if', randomCondition(dice), list(1 + dice.below(2), depth - 1), otherwise];
+      return ['if', randomCondition(dice, programs), list(1 + dice.below(2), depth - 1), otherwise];
     }
-    return randomGate(dice, wires);
+    return randomGate(dice, wires, programs);
   };
   // from |0> and bits of 0 most conditions would never hold
   const first = Array.from({ length: wires }, (_, wire): Statement[] => {
-    const turn: Statement = ['gate', [], 'ry', [angleOf(dice)], [wire]];
+    const turn: Statement =
+      programs === 'any'
+        ? ['gate', [], 'ry', [angleOf(dice)], [wire]]
+        : ['gate', [], 'h', [], [wire]];
     return dice.chance(0.4) ? [turn, ['measure', wire, dice.below(BITS)], turn] : [turn];
   });
-  return [...first.flat(), ...list(length, 2)];
+  const body = [...first.flat(), ...list(length, 2)];
+  if (programs === 'any') return body;
+  // every bit is an outcome
+  const last = wiresOf(dice, wires, Math.min(wires, BITS));
+  return [...body, ...last.map((wire, bit): Statement => ['measure', wire, bit])];
 }
 
 function conditionText(condition: Condition): string {
@@ -252,13 +285,14 @@ function rewriteAt(
   at: number,
   dice: Dice,
   wires: number,
+  programs: Kind,
   scratch: () => number,
 ): [string, number, Statement[]] | null {
   const here = list[at];
   const next = list[at + 1];
   const kind = dice.below(11);
   if (kind === 0) {
-    const gate = randomGate(dice, wires);
+    const gate = randomGate(dice, wires, programs);
     const inverse: Gate = ['gate', ['inv', ...gate[1]], gate[2], gate[3], gate[4]];
     return ['gate and inverse', 0, [gate, inverse]];
   }
@@ -326,6 +360,7 @@ export function rewritten(
   dice: Dice,
   wires: number,
   count: number,
+  programs: Kind = 'any',
 ): { program: Statement[]; bits: number; rules: string[] } {
   const copy = structuredClone(program) as Statement[];
   const rules: string[] = [];
@@ -334,7 +369,7 @@ export function rewritten(
     const list = dice.pick(listsOf(copy));
     const at = dice.below(list.length + 1);
     const before = bits;
-    const change = rewriteAt(list, at, dice, wires, () => bits++);
+    const change = rewriteAt(list, at, dice, wires, programs, () => bits++);
     // scratch bits in a branch that is not taken stay as they were: they are written before they are read
     if (!change || bits > BITS + 4) {
       bits = before;
