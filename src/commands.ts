@@ -44,7 +44,7 @@ export type CommandRequest =
       command: 'compare';
       original: Source;
       rewritten: Source;
-      options: CommonOptions & { relabel?: boolean };
+      options: CommonOptions & { relabel?: boolean; map?: string };
     }
   | {
       command: 'build';
@@ -108,7 +108,11 @@ async function perform(
       const settings: CompareOptions = {
         contract: contractPart(options),
         seed: common.seed,
-        ...defined({ tolerance: options.tolerance, relabel: request.options.relabel }),
+        ...defined({
+          tolerance: options.tolerance,
+          relabel: request.options.relabel,
+          map: request.options.map,
+        }),
       };
       const [original, rewritten] = [await read(request.original), await read(request.rewritten)];
       const report = compareCircuits(original, rewritten, settings);

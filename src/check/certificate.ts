@@ -20,6 +20,7 @@ export type Certificate = {
     inputOf?: [number, string][];
     outputOf?: [number, string][];
     relabel: boolean;
+    map?: string;
     tolerance: number;
     seed: number;
   };
@@ -35,7 +36,7 @@ export type NamedText = { name: string; text: string };
 export function certificateOf(
   report: CompareReport,
   texts: { original: NamedText; rewritten: NamedText },
-  asked: ContractOptions & { relabel?: boolean; tolerance: number },
+  asked: ContractOptions & { relabel?: boolean; map?: string; tolerance: number },
   version: string,
 ): Certificate {
   if (report.verdict === 'undecided') {
@@ -45,7 +46,7 @@ export function certificateOf(
     });
   }
   const { verdict, contract, method, proof, distance, phase, witness, relabelling, seed } = report;
-  const { inputs, outputs, inputOf, outputOf, relabel = false, tolerance } = asked;
+  const { inputs, outputs, inputOf, outputOf, relabel = false, map, tolerance } = asked;
   return {
     schema: 'wiregauge/certificate@1',
     version,
@@ -57,6 +58,7 @@ export function certificateOf(
       ...(inputOf ? { inputOf: [...inputOf] } : {}),
       ...(outputOf ? { outputOf: [...outputOf] } : {}),
       relabel,
+      ...(map === undefined ? {} : { map }),
       tolerance,
       seed,
     },

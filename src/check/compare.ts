@@ -4,7 +4,7 @@
  * Road: dense. Both circuits are unfolded (`unfold.ts`) and reduced to what an observer sees (`observed.ts`): the
  * kept outputs as qubits, the bits of the original and the outputs declared measured as bits, everything else traced
  * out. The distance is that of `channel-distance.ts`; it is a proof up to its error bar.
- * Matching: wires by number, or by the annotations of a narrowed circuit; bits by name, else by position. Extra wires of
+ * Matching: as the caller says (`matching.ts`), else wires by number, or by the annotations of a narrowed circuit; bits by name, else by position. Extra wires of
  * the rewritten circuit start in |0> and are dropped.
  * Beyond dense size: the roads of `beyond-dense.ts`, which prove; then random product inputs (`probes.ts`, a proof of difference,
  * evidence of equality), else `undecided`.
@@ -25,6 +25,7 @@ import {
   distributionDistance,
   likeliestDifference,
 } from './distribution.ts';
+import { matched } from './matching.ts';
 import { type Observation, observation } from './observation.ts';
 import { type Observed, observe } from './observed.ts';
 import { PROBES, probeOf } from './probes.ts';
@@ -40,6 +41,8 @@ export type CompareOptions = {
   tolerance?: number;
   /** Allow any permutation of the outputs. */
   relabel?: boolean;
+  /** Which register is which, `a[0]=q[2], b=r`; by number (wires) and name (bits) otherwise. */
+  map?: string;
   seed?: number;
 };
 
@@ -53,14 +56,16 @@ const MATRIX_BITS_MAX = 12;
 
 export function compareCircuits(
   original: Circuit,
-  rewritten: Circuit,
+  other: Circuit,
   {
     contract: asked = {},
     tolerance = COMPARE_TOLERANCE,
     relabel = false,
+    map,
     seed = 1,
   }: CompareOptions = {},
 ): CompareReport & { unfoldedWires: number } {
+  const rewritten = map === undefined ? other : matched(original, other, map);
   const contract = contractOf(original, asked);
   const head = {
     schema: 'wiregauge/compare@1',
@@ -73,7 +78,9 @@ export function compareCircuits(
   } as const;
   checkWires(original, rewritten, contract);
   const question = { original, rewritten, contract, tolerance, relabel, seed };
-  const answer = answerTo(question);
+  const found = answerTo(question);
+  const answer =
+    map === undefined ? found : { ...found, notes: [`matched as asked: ${map}`, ...found.notes] };
   if (answer.verdict !== 'different') return { ...head, ...answer };
   return { ...head, ...answer, where: whereTheyPart(original, rewritten, contract) };
 }

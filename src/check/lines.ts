@@ -38,6 +38,8 @@ export type Lines = {
   lineOfBit: Int32Array;
   /** Lines whose outcome a condition reads. */
   read: Set<number>;
+  /** Lines that were measured, not merely marked as leaving: whoever keeps such a qubit sees that. */
+  dephased: Set<number>;
   /** Number of lines, those of the inputs first. */
   count: number;
 };
@@ -65,6 +67,7 @@ class LineWalk {
   private readonly xors: LineGate[] = [];
   private readonly measured = new Set<number>();
   private readonly read = new Set<number>();
+  private readonly dephased = new Set<number>();
   private readonly entered = new Set<number>();
   private readonly shapes = new Map<string, Pick<LineGate, 'matrix' | 'isControl'>>();
   private readonly circuit: Circuit;
@@ -105,6 +108,7 @@ class LineWalk {
           this.lineOfBit[operation.bit] = line;
         }
         this.measured.add(line);
+        if (leaving(operation) < 0) this.dephased.add(from);
         return true;
       }
       case 'reset': {
@@ -237,6 +241,7 @@ class LineWalk {
       this.bits[bit] = rename(expression);
     });
     this.measured.delete(line);
+    this.dephased.delete(line);
     this.measured.add(copy);
     if (this.read.delete(line)) this.read.add(copy);
     return true;
@@ -260,8 +265,8 @@ class LineWalk {
       if (!this.isAnnotated && wire < this.lineOfOutput.length) this.lineOfOutput[wire] = line;
     });
     this.gates.push(...this.xors);
-    const { gates, lineOfOutput, lineOfBit, read, count } = this;
-    return { gates, lineOfOutput, lineOfBit, read, count };
+    const { gates, lineOfOutput, lineOfBit, read, dephased, count } = this;
+    return { gates, lineOfOutput, lineOfBit, read, dephased, count };
   }
 }
 

@@ -44,6 +44,10 @@ export function sidesOf(
   const isRead = (output: number): boolean =>
     a.read.has(a.lineOfOutput[output]!) || b.read.has(b.lineOfOutput[output]!);
   if (contract.outputs.some((rule, output) => rule === 'kept' && isRead(output))) return null;
+  // measured in both, a kept output is dephased in both, which the gates that only read it do not notice
+  const isDephased = (lines: Lines, output: number): boolean =>
+    lines.dephased.has(lines.lineOfOutput[output]!);
+  if (contract.outputs.some((rule, output) => rule === 'kept' && isDephased(a, output) !== isDephased(b, output))) return null; // biome-ignore format: one condition
   const ends = endsOf(a, contract);
   const lines = Math.max(a.count, b.count);
   return {

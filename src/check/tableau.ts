@@ -152,6 +152,8 @@ function observedGroup(
   contract.outputs.forEach((rule, output) => {
     if (rule === 'kept') kept.push(lines.lineOfOutput[output]!);
   });
+  // a qubit that is kept and was measured as well
+  if (kept.some((line) => lines.dephased.has(line))) return null;
   if ([...kept, ...measured].some((line) => line < 0)) return null;
   const seen = new Set([...kept, ...measured]);
   // a qubit that is kept and measured as well

@@ -102,6 +102,7 @@ function program(finish: (code: number) => void): Command {
   )
     .description('same or not, how far apart, and an input that shows it')
     .option('--relabel', 'allow a permutation of the outputs')
+    .option('--map <pairs>', 'which register is which: a[0]=q[2],b=r (original=rewritten)')
     .option('--certificate <file>', 'write what was compared and found (.json)')
     .option('--recheck <certificate>', 'repeat a comparison and hold it to its certificate')
     .addHelpText('after', '\nExample: wiregauge compare before.qasm after.qasm')
@@ -180,7 +181,7 @@ async function compareFiles(
   if (known) checkHashes(known, texts);
   const asked = known
     ? askedBy(known)
-    : { ...commonOptions(words), relabel: words.relabel === true };
+    : { ...commonOptions(words), relabel: words.relabel === true, ...(words.map ? { map: words.map } : {}) }; // biome-ignore format: one choice
   return perform(
     words,
     () => ({ command: 'compare', ...texts, options: asked }),
@@ -200,12 +201,13 @@ async function compareFiles(
   );
 }
 
-function askedBy({ asked }: Certificate): CommonOptions & { relabel?: boolean } {
-  const { inputs, outputs, inputOf, outputOf, relabel, tolerance, seed } = asked;
+function askedBy({ asked }: Certificate): CommonOptions & { relabel?: boolean; map?: string } {
+  const { inputs, outputs, inputOf, outputOf, relabel, map, tolerance, seed } = asked;
   return {
     relabel,
     tolerance,
     seed,
+    ...(map === undefined ? {} : { map }),
     ...(inputs ? { inputs } : {}),
     ...(outputs ? { outputs } : {}),
     // the rules were checked when the certificate was made

@@ -29,6 +29,7 @@ export type Words = {
   nearest?: boolean;
   wires?: number;
   relabel?: boolean;
+  map?: string;
   entanglers?: number;
   optimiser?: 'lm' | 'bfgs' | 'nelder-mead';
 };
