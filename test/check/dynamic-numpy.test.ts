@@ -240,6 +240,19 @@ describe('a kept output that is measured on its way', () => {
     expect(compare('c[0] = measure q[0]; cz q[0], q[1];', 'cz q[0], q[1];')).toBe('different');
   });
 
+  test.each([
+    ['c[0] = measure q[0]; t q[0]; c[0] = measure q[1];', 't q[0]; c[0] = measure q[1];'],
+    ['measure q[0]; h q[1]; t q[0];', 'h q[1]; t q[0];'],
+    ['measure q[0]; h q[1]; s q[0];', 'h q[1]; s q[0];'],
+  ])('the roads beyond dense size see it too: %s', (first, second) => {
+    const [original, rewritten] = [read(head + first), read(head + second)];
+    const contract = contractOf(original, kept);
+    const question = { original, rewritten, contract, tolerance: COMPARE_TOLERANCE, relabel: false, seed: 1 }; // biome-ignore format: one question
+    expect(answerBeyondDense(question)?.verdict).not.toBe('same');
+    const again = answerBeyondDense({ ...question, rewritten: original });
+    expect(again?.verdict ?? 'undecided').not.toBe('different');
+  });
+
   test('what is diagonal on it may come before or after', () => {
     expect(compare('c[0] = measure q[0]; t q[0];', 's q[0]; c[0] = measure q[0]; id q[0];')).toBe(
       'same',
