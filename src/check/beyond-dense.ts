@@ -1,6 +1,6 @@
 /**
- * The roads for circuits whose matrices do not fit: tableaus for Clifford circuits, gates cancelled against gates, sums over
- * paths, and the few gates in which two long circuits differ. Each says what it proves in its own file.
+ * The roads for circuits whose matrices do not fit: tableaus for Clifford circuits, gates cancelled against gates, pieces
+ * against pieces, sums over paths, and the few gates in which two long circuits differ. Each says what it proves in its own file.
  */
 import { wireName } from '../circuit/circuit.ts';
 import type { Witness } from '../reports.ts';
@@ -9,6 +9,7 @@ import { compareGateByGate } from './gate-by-gate.ts';
 import { localDifference } from './local-difference.ts';
 import { bitPairs } from './observation.ts';
 import { comparePathSums } from './path-sum.ts';
+import { comparePieces } from './piece-by-piece.ts';
 import { type Sides, sidesOf } from './sides.ts';
 import { compareTableaus } from './tableau.ts';
 
@@ -36,6 +37,7 @@ function firstAnswer(question: Question): Answer | null {
   if (!sides) return null;
   return (
     gateByGateAnswer(question, sides) ??
+    piecesAnswer(question, sides) ??
     pathSumAnswer(question, sides) ??
     localAnswer(question, sides)
   );
@@ -72,6 +74,22 @@ function gateByGateAnswer({ original, tolerance }: Question, sides: Sides): Answ
     verdict: 'same',
     distance: distances(hilbertSchmidt, null),
     method: 'gate by gate',
+    proof: true,
+    unfoldedWires: original.wires,
+  };
+}
+
+function piecesAnswer({ original, tolerance }: Question, sides: Sides): Answer | null {
+  const found = comparePieces(sides);
+  if (!found || found.hilbertSchmidt > tolerance) return null;
+  const { hilbertSchmidt, pieces, longest } = found;
+  return {
+    ...undecided(
+      `${pieces} pieces of at most ${longest} gates were found again, each compared densely; the distance is a bound`,
+    ),
+    verdict: 'same',
+    distance: distances(hilbertSchmidt, null),
+    method: 'piece by piece',
     proof: true,
     unfoldedWires: original.wires,
   };
