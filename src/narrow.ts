@@ -3,8 +3,8 @@
  * says why when it cannot be done.
  *
  * Order of preference: what structure allows (reordering, early measurement, boundary rules), because it keeps
- * the gates as they were written; a chain of blocks when the matrix allows fewer wires than structure; within a
- * tolerance the nearest chain; else the bound that says why not.
+ * the gates as they were written; windows of a few gates that are reshaped, which keeps all others; a chain of blocks
+ * when the matrix allows fewer wires still; within a tolerance the nearest chain; else the bound that says why not.
  */
 import { compareCircuits } from './check/compare.ts';
 import type { Circuit, Operation } from './circuit/circuit.ts';
@@ -24,10 +24,12 @@ import {
   type NarrowedCircuit,
   type WireEvent,
 } from './plan/assemble.ts';
+import { bestAt } from './plan/frontier.ts';
 import { readCircuit } from './read/openqasm.ts';
 import type { CompareReport, FitRow, NarrowReport } from './reports.ts';
 import { reshape } from './reshape/reshape.ts';
-import { chooseRoad, figures, type Road } from './reshape/road.ts';
+import { chooseRoad, figures, type Road, type Wish } from './reshape/road.ts';
+import { reshapeWindows } from './reshape/window-chains.ts';
 import { writeCircuit } from './write/openqasm.ts';
 
 export type NarrowOptions = ContractOptions & {
@@ -72,6 +74,8 @@ type Job = {
   notes: string[];
 };
 
+type Gates = { narrowed: NarrowedCircuit; fits: FitRow[] };
+
 type Rewritten = {
   narrowed: NarrowedCircuit;
   fits: FitRow[];
@@ -85,9 +89,8 @@ export async function narrow(original: Circuit, options: NarrowOptions): Promise
   const { control, contract, tolerance, seed } = job;
   control.report({ stage: 'looking for a plan' });
   const wish = { circuit: original, contract, wires: options.wires, tolerance };
-  const road = chooseRoad({ ...wish, stopped: control.stopped });
-  if (road.kind === 'impossible' || road.kind === 'undecided') return answer(job, road, null);
-  const rewriting = await rewrite(job, road);
+  const { road, rewriting } = await alongRoad(job, { ...wish, stopped: control.stopped });
+  if (rewriting === null) return answer(job, road, null);
   if (typeof rewriting === 'string') return answer(job, closedAfterAll(road, rewriting), null);
   const { narrowed, fits } = rewriting;
   control.report({ stage: 'checking the written text' });
@@ -120,11 +123,25 @@ function settle(original: Circuit, options: NarrowOptions): Job {
   };
 }
 
+/** The road, and the narrower circuit along it: null where it is closed from the start, or why it is closed after all. */
+async function alongRoad(
+  job: Job,
+  wish: Wish,
+): Promise<{ road: Road; rewriting: Gates | string | null }> {
+  const road = chooseRoad(wish);
+  if (road.kind === 'impossible' || road.kind === 'undecided') return { road, rewriting: null };
+  if (road.kind !== 'windows') return { road, rewriting: await rewrite(job, road) };
+  const rewriting = await throughWindows(job, road);
+  if (rewriting || wish.stopped()) return { road, rewriting: rewriting ?? 'but it was stopped' };
+  job.notes.push('windows were found, but the gates for one of them were not');
+  return alongRoad(job, { ...wish, withoutWindows: true });
+}
+
 /** The narrower circuit of a road that leads somewhere, or why the road turned out to be closed. */
 async function rewrite(
   { original, contract, native, options, seed, control }: Job,
   road: Road & { kind: 'structure' | 'chain' | 'feed-forward' },
-): Promise<{ narrowed: NarrowedCircuit; fits: FitRow[] } | string> {
+): Promise<Gates | string> {
   if (road.kind === 'structure') {
     const { narrowed } = road;
     return {
@@ -143,6 +160,27 @@ async function rewrite(
   }
   const narrowed = assembleWires(reshaped.events, original, contract);
   return { narrowed: inNativeGates(narrowed, contract, native), fits: reshaped.fits };
+}
+
+/** The circuit with its windows reshaped; null when one of them could not be. */
+async function throughWindows(
+  { contract, native, options, seed, control }: Job,
+  { plan, windows }: Road & { kind: 'windows' },
+): Promise<Gates | null> {
+  const reshaped = await reshapeWindows(plan, windows, {
+    entangler: native.entangler,
+    seed,
+    goal: FIT_GOAL,
+    runJobs: options.runJobs,
+    control,
+    finish: (operations, wires) => toNative(operations, wires, native).filter((operation) => operation.kind === 'gate'), // biome-ignore format: one line
+  });
+  if (!reshaped) return null;
+  const { narrowed } = bestAt(reshaped.plan, options.wires ?? reshaped.plan.width.width);
+  return {
+    narrowed: options.nativeAsked ? inNativeGates(narrowed, contract, native) : narrowed,
+    fits: reshaped.fits,
+  };
 }
 
 /**

@@ -1,14 +1,18 @@
 /**
  * Chooses how a circuit is to be narrowed, or says why it cannot be.
  *
- * Order: what structure gives stands, unless the matrix allows fewer wires and these are wanted; then the chain
- * of blocks along the causal order; then, for kept outputs, the nearest chain within the tolerance. What is left
+ * Order: what structure gives stands, unless windows or the matrix allow fewer wires and these are wanted; then windows of a
+ * few gates where they do as well as the matrix of the whole (they leave all other gates as they are), else the chain of
+ * blocks along the causal order; then, for kept outputs, the nearest chain within the tolerance. What is left
  * is impossible, with a bound, or, where no matrix could be had, undecided.
  */
 import { type Circuit, wireName } from '../circuit/circuit.ts';
 import { type Contract, contractName } from '../contract.ts';
 import { distanceFromInfidelity } from '../numeric/distance.ts';
-import { type NarrowedCircuit, narrowByStructure } from '../plan/structure.ts';
+import { bestAt } from '../plan/frontier.ts';
+import type { NarrowedCircuit } from '../plan/structure.ts';
+import { planStructure, type StructurePlan } from '../plan/structure-plan.ts';
+import { planWindows, type Window } from '../plan/windows.ts';
 import { INFLUENCE_WIRES_MAX } from '../survey/influence.ts';
 import {
   type Attempt,
@@ -21,10 +25,16 @@ import {
 import type { ChainPlan } from './chain.ts';
 import { unitaryOf } from './unitary-part.ts';
 
+/** Windows of this many wires are looked for in larger circuits only. */
+const WINDOW_WIRES = 4;
+/** Longer circuits would be searched for minutes. */
+const WINDOW_OPERATIONS_MAX = 4000;
+
 export type Bracket = { lower: number; reached: number | null };
 
 export type Road =
   | { kind: 'structure'; reason: string; narrowed: NarrowedCircuit }
+  | { kind: 'windows'; reason: string; plan: StructurePlan; windows: readonly Window[] }
   | { kind: 'chain'; reason: string; question: Question; attempt: Attempt; bracket: Bracket }
   | { kind: 'feed-forward'; reason: string; question: Question; plan: ChainPlan; width: number }
   | { kind: 'impossible'; reason: string; bracket: Bracket | null }
@@ -38,23 +48,26 @@ export type Wish = {
   /** On the distance D. */
   tolerance: number;
   stopped(): boolean;
+  /** Windows have been tried, and did not come to anything. */
+  withoutWindows?: boolean;
 };
 
 export function chooseRoad(wish: Wish): Road {
   const { circuit, wires: wanted } = wish;
   const n = circuit.wires;
-  const narrowed = narrowByStructure(circuit, wish.contract, {
-    ...(wanted === undefined ? {} : { wires: wanted }),
-  });
+  const plan = planStructure(circuit, wish.contract);
+  const { narrowed } = bestAt(plan, wanted ?? plan.width.width);
   const structural = narrowed.circuit.wires;
   if (wanted !== undefined && structural <= wanted) return byStructure(narrowed, n);
   const u = structural > 1 ? unitaryOf(circuit, INFLUENCE_WIRES_MAX) : null;
-  if (!u) return withoutMatrix(wish, narrowed);
+  if (!u) return throughWindows(wish, plan, structural, wanted ?? structural - 1) ?? withoutMatrix(wish, narrowed); // biome-ignore format: one choice
   const measured = wish.contract.outputs.map((rule) => rule === 'measured');
   const question = { u, wires: n, measured, stopped: wish.stopped };
   const causal = causalWidth(question);
   const goal = wanted ?? causal.width;
   if (causal.width < structural && causal.width <= goal) {
+    const windows = throughWindows(wish, plan, structural, goal);
+    if (windows) return windows;
     // feed-forward only where it saves wires
     const asKept = { ...question, measured: measured.map(() => false) };
     const quantum = measured.includes(true) ? causalWidth(asKept) : causal;
@@ -69,6 +82,23 @@ export function chooseRoad(wish: Wish): Road {
   if (nearest?.kind === 'chain') return nearest;
   if (wanted === undefined && structural < n) return byStructure(narrowed, n);
   return nearest ?? impossibleMeasured(wish, causal);
+}
+
+/** Windows with which the circuit needs no more than `goal` wires; null where there are none. */
+function throughWindows(
+  { circuit, withoutWindows = false, stopped }: Wish,
+  plan: StructurePlan,
+  structural: number,
+  goal: number,
+): Road | null {
+  const isWorthIt = circuit.wires > WINDOW_WIRES && circuit.operations.length <= WINDOW_OPERATIONS_MAX; // biome-ignore format: one condition
+  if (withoutWindows || structural <= 1 || !isWorthIt) return null;
+  const found = planWindows(plan, { stopped });
+  const { windows, width } = found;
+  if (windows.length === 0 || width.width >= structural || width.width > goal) return null;
+  const where = windows.length === 1 ? 'one window' : `${windows.length} windows`;
+  const reason = `the order of the gates needs ${count(structural)}, but the influence in ${where} of a few gates allows ${width.width}`;
+  return { kind: 'windows', reason, plan, windows };
 }
 
 function byStructure(narrowed: NarrowedCircuit, before: number): Road {
