@@ -20,8 +20,9 @@ import { type Control, freeRunning } from './control.ts';
 import { InputError } from './input-error.ts';
 import type { RunJobs } from './jobs.ts';
 import { type CustomEntangler, type NativeSet, nativeSetOf } from './native/native-set.ts';
-import { synthesise, type Wanted, wantedDistance } from './native/synthesise.ts';
+import { synthesise } from './native/synthesise.ts';
 import { toNative } from './native/to-native.ts';
+import { type Wanted, wantedDistance } from './native/wanted.ts';
 import { distanceAngle, processInfidelity } from './numeric/distance.ts';
 import type { BuildReport } from './reports.ts';
 
@@ -39,7 +40,9 @@ export type BuildOptions = ContractOptions & {
   control?: Control;
 };
 
-export const BUILD_WIRES_MAX = 5;
+export const BUILD_WIRES_MAX = 8;
+/** Circuits on more wires keep their own gates. */
+const CIRCUIT_WIRES_MAX = 5;
 
 export async function buildTarget(
   target: Circuit,
@@ -49,7 +52,7 @@ export async function buildTarget(
   const set = nativeSetOf(native, options.custom);
   const contract = contractOf(target, options);
   const links = checkedLinks(options.links, target.wires);
-  if (target.wires > BUILD_WIRES_MAX && hasGates(target)) {
+  if (target.wires > CIRCUIT_WIRES_MAX && hasGates(target)) {
     return converted(target, options, set, contractName(contract), contract.decidedBy === 'file');
   }
   const wanted = wantedOf(target, contract.inputs);
@@ -79,7 +82,9 @@ export async function buildTarget(
   const circuit: Circuit = { ...emptyCircuit(target.wires, 0, target.name), operations };
   const made = columnsOf(operations as readonly GateOperation[], wanted);
   const hilbertSchmidt = wantedDistance(wanted, made);
-  const isBuilt = hilbertSchmidt <= tolerance;
+  const isWithin =
+    countCircuit(circuit).twoQubit <= (options.entanglers ?? Number.POSITIVE_INFINITY);
+  const isBuilt = hilbertSchmidt <= tolerance && isWithin;
   return {
     circuit,
     report: {
@@ -175,7 +180,7 @@ function converted(
       contractFromFile,
       seconds: 0,
       notes: [
-        `more than ${BUILD_WIRES_MAX} wires: converted gate by gate, exactly; the distance is that of the rules, not measured`,
+        `more than ${CIRCUIT_WIRES_MAX} wires: converted gate by gate, exactly; the distance is that of the rules, not measured`,
       ],
       target: target.name,
       verdict: 'built',

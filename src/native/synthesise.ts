@@ -1,376 +1,187 @@
 /**
- * Finds few entanglers for a block by fitting templates at rising counts.
+ * Makes a block from few entanglers: chooses between exact roads, a search, and a decomposition that is made shorter.
  *
- * What is wanted: the columns of a unitary that count, all of them for a block, one for a state.
- * Method: two wires with an entangler of known class are exact. Otherwise counts rise from the least that can do; for each,
- * templates with different placements of the pairs are fitted, cheap for special targets: a beam keeps the placements
- * that came nearest, and the next count extends each of them by one more pair on every link, started from its angles.
- * When the beam ends, or at once where nothing special shows, cyclic and random placements at the bound by dimension are
- * fitted from random starts (Shende, Markov, Bullock, PRA 69, 062321 (2004); for isometries Iten et al., PRA 93, 032318
- * (2016): the free real numbers of the target less 3 per wire, over 4).
- * How the count is known: `proven` when it meets a theorem's bound, `exhausted below` when every placement of fewer was
- * tried, else `found`.
- * Every batch is decided in list order, so the answer does not depend on the number of workers.
+ * One wire needs none, two wires have a closed form (`two-wire.ts`). Factors on separate wires are built on their own; on
+ * four wires and more so are diagonals, permutations and wires that select (`structured.ts`), and what comes out is fitted
+ * with fewer entanglers on four wires, window by window on more. Everything else is searched for (`search.ts`) on up to
+ * `SEARCH_WIRES_MAX` wires. On five wires and more, and where a search ends without success, the quantum Shannon decomposition
+ * (`shannon.ts`) is sure; its windows are fitted anew until none improves (`windows.ts`).
+ * Links that are missing are gone round by ladders of CX (`links.ts`).
+ * A stop from outside keeps the best so far, which is exact as soon as a decomposition is there.
  */
 import { type GateOperation, unitaryGate } from '../circuit/circuit.ts';
-import type { Control } from '../control.ts';
-import type { RunJobs } from '../jobs.ts';
-import { hilbertSchmidtDistance } from '../numeric/distance.ts';
-import { random } from '../numeric/random.ts';
-import type { FitRow } from '../reports.ts';
-import type { FitJob, FitTarget } from '../reshape/fit-block.ts';
+import { gateMatrix } from '../circuit/unitary.ts';
+import type { Pair } from '../reshape/placement-beam.ts';
+import { decompose } from './decompose.ts';
+import { goRound } from './links.ts';
+import { exact, Search, type Synthesis, type SynthesisOptions } from './search.ts';
+import { shannonGates } from './shannon.ts';
+import { factorsOf } from './structure.ts';
+import { type BuildPart, type Structured, structuredGates } from './structured.ts';
 import {
-  beamOfPlacements,
-  descend,
-  type FitSettings,
-  fitPlacements,
-  type Pair,
-  type Placement,
-  shorten,
-  structuredDistance,
-} from '../reshape/placement-beam.ts';
-import {
-  type Entangler,
-  entanglerTemplate,
-  type Template,
-  templateOperations,
-} from '../reshape/template.ts';
-import { diagonalGates, isDiagonal } from './diagonal.ts';
-import { entanglerUse, twoWireGates, usesNeeded } from './two-wire.ts';
+  anglesEach,
+  type EntanglerUse,
+  entanglerUse,
+  twoWireGates,
+  usesNeeded,
+} from './two-wire.ts';
+import { dimensionBound, isWhole, type Wanted } from './wanted.ts';
+import { inEntanglers, refitWindows } from './windows.ts';
 
-/** A block: its whole unitary (planar), and which input basis states count. */
-export type Wanted = { wires: number; matrix: Float64Array; columns: readonly number[] };
-
-export type SynthesisOptions = {
-  entangler: Entangler;
-  links: readonly Pair[];
-  entanglersMax?: number;
-  tolerance: number;
-  seed: number;
-  optimiser: FitJob['optimiser'];
-  runJobs: RunJobs;
-  control: Control;
-  /** A placement that is known to do, for example that of the circuit as written. */
-  hint?: readonly Pair[];
-};
-
-export type Synthesis = {
-  operations: GateOperation[];
-  bound: number;
-  boundKind: 'proven' | 'exhausted below' | 'found';
-  frontier: { entanglers: number; distance: number }[];
-  fits: FitRow[];
-  notes: string[];
-  isStopped: boolean;
-};
-
-/** Special targets are searched for up to this many entanglers before the generic count is taken. */
-const SEARCH_MAX = 11;
-/** The same on four wires and more, where a level costs much more. */
-const SEARCH_MAX_WIDE = 7;
-const HINT_STARTS = 6;
-const GENERIC_STARTS = 12;
-/** D between the wanted columns and those made (2^n x columns, planar). */
-export function wantedDistance(wanted: Wanted, made: Float64Array): number {
-  const target = wantedColumns(wanted);
-  // the formula of distance.ts is per column: it divides by the root of the number of entries
-  const { distance } = hilbertSchmidtDistance(target, made);
-  const d = 2 ** wanted.wires;
-  return (distance * Math.sqrt(d * wanted.columns.length)) / wanted.columns.length;
-}
-
-function wantedColumns({ wires, matrix, columns }: Wanted): Float64Array {
-  const d = 2 ** wires;
-  const c = columns.length;
-  const out = new Float64Array(2 * d * c);
-  for (let r = 0; r < d; r++) {
-    columns.forEach((column, k) => {
-      out[r * c + k] = matrix[r * d + column]!;
-      out[d * c + r * c + k] = matrix[d * d + r * d + column]!;
-    });
-  }
-  return out;
-}
-
-/** Least number of CX by counting real numbers; other fixed entanglers bring up to six each. */
-export function dimensionBound(wires: number, columns: number, isCxLike: boolean): number {
-  const d = 2 ** wires;
-  const m = Math.log2(columns);
-  if (columns === d)
-    return Math.max(0, Math.ceil((4 ** wires - 3 * wires - 1) / (isCxLike ? 4 : 6)));
-  const free = 2 ** (wires + m + 1) - 4 ** m - 2 * wires - m - 1;
-  return Math.max(0, Math.ceil(free / (isCxLike ? 4 : 6)));
-}
+/** Generic targets on more wires are not searched for: a fit takes hours. */
+export const SEARCH_WIRES_MAX = 5;
+/** Structure other than factors is taken apart from this many wires on; below, a search is better. */
+const STRUCTURED_WIRES_MIN = 4;
 
 export async function synthesise(wanted: Wanted, options: SynthesisOptions): Promise<Synthesis> {
   const use = entanglerUse(options.entangler);
-  const d = 2 ** wanted.wires;
-  const isWhole = wanted.columns.length === d;
-  const isFree = options.entanglersMax === undefined;
-  if (wanted.wires === 1) return exact([unitaryGate(wanted.matrix, [0])], 0);
-  if (wanted.wires === 2 && isWhole) {
-    const uses = usesNeeded(wanted.matrix, use);
-    const gates = twoWireGates(wanted.matrix, use);
-    if (gates && uses !== undefined && (isFree || uses <= options.entanglersMax!)) {
-      return exact(gates, uses);
-    }
+  const { wires, matrix } = wanted;
+  if (wires === 1) return exact([unitaryGate(matrix, [0])], 0);
+  const most = options.entanglersMax ?? Number.POSITIVE_INFINITY;
+  if (wires === 2 && isWhole(wanted)) {
+    const uses = usesNeeded(matrix, use);
+    const gates = twoWireGates(matrix, use);
+    if (gates && uses !== undefined && uses <= most) return exactPair(gates, uses, use);
   }
-  const isComplete = options.links.length === (wanted.wires * (wanted.wires - 1)) / 2;
-  if (
-    wanted.wires > 3 &&
-    isWhole &&
-    isComplete &&
-    use.kind === 'cx-like' &&
-    isDiagonal(wanted.matrix, wanted.wires)
-  ) {
-    const gates = diagonalGates(wanted.matrix, wanted.wires);
-    const count = gates.filter(({ wires }) => wires.length === 2).length;
-    if (isFree || count <= options.entanglersMax!) {
-      return { ...exact(gates, 0), boundKind: 'found', notes: ['diagonal: a sum of parities'] };
-    }
+  const known = await exactRoad(wanted, options, use);
+  if (known && usesIn(known.operations) <= most) return known;
+  if (wires > SEARCH_WIRES_MAX) {
+    const found = await decomposed(wanted, options, use);
+    return { ...found, isStopped: found.isStopped || usesIn(found.operations) > most };
   }
-  return new Search(wanted, options, use.kind !== 'other').run();
+  const searched = await new Search(wanted, options).run();
+  const isDone = (searched.fits[0]?.distance ?? 1) <= options.tolerance;
+  if (isDone || wires < 3) return searched;
+  const sure = await decomposed(wanted, options, use);
+  if (usesIn(sure.operations) > most) return searched;
+  return { ...sure, frontier: searched.frontier };
 }
 
-function exact(operations: GateOperation[], bound: number): Synthesis {
-  const fits: FitRow[] = [];
-  return {
-    operations,
-    bound,
-    boundKind: 'proven',
-    frontier: [],
-    fits,
-    notes: [],
-    isStopped: false,
+function usesIn(operations: readonly GateOperation[]): number {
+  return operations.filter(({ wires }) => wires.length === 2).length;
+}
+
+function exactPair(operations: GateOperation[], uses: number, use: EntanglerUse): Synthesis {
+  // counts of fitted classes beyond two uses are the fewest that were found
+  const isTheorem = use.kind !== 'other' || uses <= 2;
+  return isTheorem ? exact(operations, uses) : { ...exact(operations, 0), boundKind: 'found' };
+}
+
+/** By structure; undefined where there is none, or where a search does better. */
+async function exactRoad(
+  wanted: Wanted,
+  options: SynthesisOptions,
+  use: EntanglerUse,
+): Promise<Synthesis | undefined> {
+  const { wires, matrix } = wanted;
+  if (wires < 3 || !isWhole(wanted)) return undefined;
+  if (wires < STRUCTURED_WIRES_MIN && factorsOf(matrix, wires).length === 1) return undefined;
+  const build: BuildPart = async (part, of) => {
+    const columns = Array.from({ length: 2 ** of.length }, (_, k) => k);
+    const { hint: _, entanglersMax: __, ...rest } = { ...options, isPart: true };
+    const inner = { wires: of.length, matrix: part, columns };
+    return (await synthesise(inner, { ...rest, links: linksAmong(options.links, of) })).operations;
   };
+  const found = await structuredGates(matrix, wires, build);
+  const written = found && inEntanglers(linked(found.operations, options, wires), use, gateMatrix);
+  if (!written) return undefined;
+  return improved(wanted, { ...found, operations: written }, options, use);
 }
 
-/** One search: its settings, and the nearest placement per count for the frontier. */
-class Search {
-  private readonly frontier = new Map<number, Placement>();
-  private readonly target: FitTarget;
-  private readonly order: number[];
-  private readonly wanted: Wanted;
-  private readonly options: SynthesisOptions;
-  private readonly generic: number;
-  private readonly isCxLike: boolean;
-  private isExhausted = true;
-
-  constructor(wanted: Wanted, options: SynthesisOptions, isCxLike: boolean) {
-    this.wanted = wanted;
-    this.options = options;
-    this.isCxLike = isCxLike;
-    const d = 2 ** wanted.wires;
-    this.generic = dimensionBound(wanted.wires, wanted.columns.length, isCxLike);
-    // a fit counts the first columns: wires that start in |0> come first
-    this.order = wireOrder(wanted);
-    this.target =
-      wanted.columns.length === d
-        ? { kind: 'unitary', matrix: wanted.matrix }
-        : {
-            kind: 'columns',
-            matrix: reordered(wanted, this.order),
-            columns: wanted.columns.length,
-          };
-  }
-
-  async run(): Promise<Synthesis> {
-    const { entanglersMax = Number.POSITIVE_INFINITY } = this.options;
-    const isSmall = this.generic <= 5;
-    const isSpecial = isSmall || this.looksSpecial();
-    if (isSpecial || this.wanted.wires === 3) {
-      const widest = this.wanted.wires > 3 ? SEARCH_MAX_WIDE : SEARCH_MAX;
-      const most = Math.min(entanglersMax, isSmall ? this.generic + 4 : widest);
-      const found = await this.beam(most, isSpecial ? undefined : structuredDistance);
-      if (found) return this.answer(found);
-    }
-    this.isExhausted = false;
-    const hinted = await this.fromHint();
-    if (hinted && hinted.pairs.length <= entanglersMax) return this.answer(hinted);
-    if (entanglersMax < this.generic) {
-      await this.placements(entanglersMax, GENERIC_STARTS);
-      return this.answer(null);
-    }
-    for (let spare = 0; spare <= 4 && this.generic + spare <= entanglersMax; spare++) {
-      if (this.options.control.stopped()) break;
-      const found = await this.placements(this.generic + spare, GENERIC_STARTS);
-      if (!found) continue;
-      return this.answer(isSpecial ? await this.shortened(found) : found);
-    }
-    return this.answer(null);
-  }
-
-  /** Few distinct sizes among the entries: gates and Fourier transforms have it, generic unitaries do not. */
-  private looksSpecial(): boolean {
-    const { matrix } = this.wanted;
-    const half = matrix.length / 2;
-    const sizes = new Set<number>();
-    for (let k = 0; k < half; k++) {
-      sizes.add(Math.round(1e7 * Math.hypot(matrix[k]!, matrix[half + k]!)));
-    }
-    return sizes.size <= half / 4;
-  }
-
-  private get fitting(): FitSettings {
-    const { tolerance, seed, optimiser, runJobs, control } = this.options;
-    return {
-      label: 'the block',
-      target: this.target,
-      templateOf: (pairs) => this.templateOf(pairs),
-      tolerance,
-      seed,
-      optimiser,
-      runJobs,
-      control,
-    };
-  }
-
-  private async beam(
-    countMax: number,
-    farAt?: (count: number) => number,
-  ): Promise<Placement | null> {
-    const { links } = this.options;
-    const limits = { links, countMax, ...(farAt ? { farAt } : {}) };
-    const found = await beamOfPlacements({ ...this.fitting, ...limits });
-    this.note(found.levels);
-    if (!found.best) return null;
-    const { best, isExhausted } = await descend(found.best, { ...this.fitting, ...limits });
-    this.isExhausted = isExhausted;
-    this.note([best]);
-    return best;
-  }
-
-  /** The hint, when it fits and is shorter than what generic targets need, and then as short as it can be made. */
-  private async fromHint(): Promise<Placement | null> {
-    const { hint, tolerance } = this.options;
-    if (!hint || hint.length >= this.generic) return null;
-    const list = Array.from({ length: HINT_STARTS }, () => ({ pairs: hint, start: null }));
-    const [best] = await fitPlacements(list, {
-      ...this.fitting,
-      label: 'the placement as written',
-    });
-    return best && best.distance <= tolerance ? this.shortened(best) : null;
-  }
-
-  private async shortened(found: Placement): Promise<Placement> {
-    const best = await shorten(found, this.fitting);
-    this.note([best]);
-    return best;
-  }
-
-  /** Cyclic and random placements with this many entanglers, from random starts. */
-  private async placements(count: number, starts: number): Promise<Placement | null> {
-    const { links, seed, control } = this.options;
-    control.report({ stage: `fitting ${count} entanglers` });
-    const list: { pairs: Pair[]; start: null }[] = [];
-    for (let k = 0; k < starts; k++) {
-      const draw = random(seed, 'placement', count, k);
-      const pairs: Pair[] = [];
-      while (pairs.length < count) {
-        const cyclic = links[(pairs.length + k) % links.length]!;
-        const any = links[Math.floor(draw() * links.length)]!;
-        pairs.push(k % 3 === 2 ? any : cyclic);
-      }
-      list.push({ pairs, start: null });
-    }
-    const found = await fitPlacements(list, { ...this.fitting, label: 'the whole' });
-    this.note(found);
-    const [best] = found;
-    return best && best.distance <= this.options.tolerance ? best : null;
-  }
-
-  private templateOf(pairs: readonly Pair[]): Template {
-    const placed = pairs.map(([a, b]): [number, number] => [
-      this.order.indexOf(a),
-      this.order.indexOf(b),
-    ]);
-    return entanglerTemplate(this.wanted.wires, placed, this.options.entangler);
-  }
-
-  /** Every search tries a fit unless it is stopped before one ends; then no gates at all are the best so far. */
-  private unfitted(): Synthesis {
-    return {
-      ...exact([], 0),
-      boundKind: 'found',
-      notes: ['stopped before a fit'],
-      isStopped: true,
-    };
-  }
-
-  /** Keeps the nearest of every count for the frontier. */
-  private note(found: readonly Placement[]): void {
-    for (const placement of found) {
-      const before = this.frontier.get(placement.pairs.length);
-      if (!before || placement.distance < before.distance) {
-        this.frontier.set(placement.pairs.length, placement);
-      }
+/** The links between these wires, renumbered; all pairs when they are not connected (`goRound` sees to it). */
+function linksAmong(links: readonly Pair[], of: readonly number[]): Pair[] {
+  const inner = links.flatMap(([a, b]): Pair[] => {
+    const [p, q] = [of.indexOf(a), of.indexOf(b)];
+    return p < 0 || q < 0 ? [] : [[p, q]];
+  });
+  const reached = new Set([0]);
+  for (let round = 0; round < of.length; round++) {
+    for (const [p, q] of inner) {
+      if (reached.has(p)) reached.add(q);
+      if (reached.has(q)) reached.add(p);
     }
   }
-
-  private answer(found: Placement | null): Synthesis {
-    const rows = [...this.frontier.entries()].sort(([a], [b]) => a - b);
-    const best = found ?? rows.map(([, row]) => row).sort((a, b) => a.distance - b.distance)[0];
-    if (!best) return this.unfitted();
-    const used = best.pairs.length;
-    const isProven = found !== null && used === 0;
-    const meetsBound = found !== null && used === this.generic && !this.isExhausted;
-    // counting dimensions bounds generic targets only
-    const isGeneric = meetsBound && !this.looksSpecial();
-    const bound = isGeneric ? this.generic : found && this.isExhausted ? used : 0;
-    const operations = templateOperations(this.templateOf(best.pairs), best.angles).map(
-      (operation) => ({ ...operation, wires: operation.wires.map((w) => this.order[w]!) }),
-    );
-    return {
-      operations,
-      bound,
-      boundKind: isProven || isGeneric ? 'proven' : this.isExhausted && found ? 'exhausted below' : 'found', // biome-ignore format: one choice
-      frontier: rows.map(([entanglers, { distance }]) => ({ entanglers, distance })),
-      fits: [
-        {
-          block: 0,
-          wires: this.order.slice().sort((a, b) => a - b),
-          entanglers: used,
-          iterations: best.iterations,
-          distance: best.distance,
-          status: best.status,
-        },
-      ],
-      notes: isGeneric
-        ? ['the bound holds for generic targets of this size (dimension counting)']
-        : this.isCxLike
-          ? []
-          : ['the bound for this entangler counts six angles each'],
-      isStopped: this.options.control.stopped(),
-    };
-  }
+  if (reached.size === of.length) return inner;
+  return of.flatMap((_, a) => of.slice(a + 1).map((__, b): Pair => [a, a + 1 + b]));
 }
 
-/** Wires that start in |0> first, each group ascending; the place of a wire in it is its wire in the template. */
-function wireOrder({ wires, columns }: Wanted): number[] {
-  const all = Array.from({ length: wires }, (_, k) => k);
-  const isZero = (wire: number): boolean =>
-    columns.every((column) => (column & (2 ** (wires - 1 - wire))) === 0);
-  return [...all.filter(isZero), ...all.filter((wire) => !isZero(wire))];
+function linked(
+  operations: readonly GateOperation[],
+  { links }: SynthesisOptions,
+  wires: number,
+): GateOperation[] {
+  return goRound(
+    operations.flatMap((operation) => decompose(operation)),
+    links,
+    wires,
+  );
 }
 
-/** The wanted columns with rows and columns in the order of the template's wires. */
-function reordered(wanted: Wanted, order: readonly number[]): Float64Array {
-  const { wires, columns } = wanted;
-  const d = 2 ** wires;
-  const c = columns.length;
-  const move = (state: number): number =>
-    order.reduce(
-      (sum, wire, k) => sum + (state & (2 ** (wires - 1 - wire)) ? 2 ** (wires - 1 - k) : 0),
-      0,
-    );
-  const from = wantedColumns(wanted);
-  const rank = columns.map(move);
-  const out = new Float64Array(2 * d * c);
-  for (let r = 0; r < d; r++) {
-    rank.forEach((to, k) => {
-      out[move(r) * c + to] = from[r * c + k]!;
-      out[d * c + move(r) * c + to] = from[d * c + r * c + k]!;
-    });
+/** What was taken apart, made shorter: on four wires as a whole, on more by windows. */
+async function improved(
+  wanted: Wanted,
+  { operations, note }: Structured,
+  options: SynthesisOptions,
+  use: EntanglerUse,
+): Promise<Synthesis> {
+  const before = usesIn(operations);
+  const plain: Synthesis = { ...exact(operations, 0), boundKind: 'found', notes: [note] };
+  if (before === 0) return { ...plain, boundKind: 'proven' };
+  const isRefined = note.startsWith('wire') || note.startsWith('a permutation');
+  if (wanted.wires === 4 && isRefined && use.kind !== 'adjustable') {
+    const pairs = operations.flatMap(({ wires: [a, b] }): Pair[] => (b === undefined ? [] : [[a!, b]])); // biome-ignore format: one list
+    const { hint: _, ...rest } = options;
+    const found = await new Search(wanted, { ...rest, hint: pairs }).runFromHint();
+    const isBetter = usesIn(found.operations) < before;
+    const isRight = (found.fits[0]?.distance ?? 1) <= options.tolerance;
+    if (isBetter && isRight) return { ...found, notes: [note, ...found.notes] };
+    return { ...plain, frontier: found.frontier, isStopped: found.isStopped };
   }
-  return out;
+  if (wanted.wires > 4) return byWindows(operations, wanted, options, use, note);
+  return plain;
+}
+
+/** The quantum Shannon decomposition, and windows of it fitted anew. */
+async function decomposed(
+  wanted: Wanted,
+  options: SynthesisOptions,
+  use: EntanglerUse,
+): Promise<Synthesis> {
+  options.control.report({ stage: `decomposing ${wanted.wires} wires` });
+  const gates = linked(shannonGates(wanted.matrix, wanted.wires), options, wanted.wires);
+  const operations = inEntanglers(gates, use, gateMatrix);
+  if (!operations) return { ...exact([], 0), boundKind: 'found', notes: ['the entangler does not entangle'], isStopped: true }; // biome-ignore format: one case
+  return byWindows(operations, wanted, options, use, 'quantum Shannon decomposition');
+}
+
+async function byWindows(
+  operations: GateOperation[],
+  wanted: Wanted,
+  options: SynthesisOptions,
+  use: EntanglerUse,
+  what: string,
+): Promise<Synthesis> {
+  const { links, seed, optimiser, runJobs, control } = options;
+  const each = anglesEach(options.entangler);
+  const refitted = await refitWindows(operations, wanted.wires, {
+    use,
+    links,
+    enoughFor: (k) => (k === 2 ? 3 : dimensionBound(k, 2 ** k, each)),
+    seed,
+    optimiser,
+    runJobs,
+    control,
+  });
+  const [before, after] = [usesIn(operations), usesIn(refitted.operations)];
+  const notes = [`${what}: ${before} entanglers`];
+  if (after < before) {
+    notes.push(`${refitted.improved} windows fitted anew: ${after} entanglers`);
+  }
+  if (refitted.isStopped) notes.push('stopped before every window was tried: more time may save entanglers'); // biome-ignore format: one sentence
+  return {
+    ...exact(refitted.operations, 0),
+    boundKind: 'found',
+    notes,
+    isStopped: refitted.isStopped,
+  };
 }

@@ -9,7 +9,7 @@
  * Measurements, resets, barriers, conditions and annotations keep their places: single-wire gates before them are written
  * before them. A conditioned gate becomes conditioned native gates. A frame change right before an unconditional
  * measurement or reset does nothing and is left out.
- * Fails: InputError for gates without an exact way (see `decompose.ts`), and for entanglers that only a fit can use.
+ * Fails: InputError for gates without an exact way (see `decompose.ts`), and for entanglers that do not entangle.
  */
 import {
   type BitExpression,
@@ -223,9 +223,9 @@ class NativeWriter {
     const pieces = twoWireGates(gateMatrix(operation), this.use);
     if (!pieces) {
       throw new InputError({
-        code: 'needs-a-fit',
-        message: `expected an entangler of the class of cx or with an angle, got ${this.set.entangler.name}`,
-        hint: 'wiregauge build fits gates for any entangler',
+        code: 'weak-entangler',
+        message: `expected an entangler that makes every two-wire gate in a few uses, got ${this.set.entangler.name}`,
+        hint: 'a product of single-wire gates, a swap, and what is near to them will not do',
       });
     }
     return pieces.map((piece) => ({

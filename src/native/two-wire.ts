@@ -1,5 +1,5 @@
 /**
- * Writes any two-wire gate with the fewest uses of a CX-like or adjustable entangler, exactly.
+ * Writes any two-wire gate with the fewest uses of an entangler, exactly.
  *
  * Shape: u is 4 x 4, planar; the result is gates on wires 0 and 1 in order of time, single-wire ones as `unitary`
  * operations, equal to u up to a phase.
@@ -10,15 +10,19 @@
  *   3 CX   Vatan, Williams, PRA 69, 032315 (2004), figure 6 (its rotations turn the other way round).
  *   adjustable interaction E(t) in the class (t', 0, 0): one use per coordinate that is not zero.
  * Counts are minimal for CX: Shende, Bullock, Markov, PRA 70, 012310 (2004). CZ, ECR and every other entangler of the
- * class (pi/4, 0, 0) is a CX up to local gates and takes its place.
- * Fails: returns undefined for entanglers of other classes; the caller then fits.
+ * class (pi/4, 0, 0) is a CX up to local gates and takes its place. Cores of entanglers of other classes are fitted
+ * (`fitted-pair.ts`).
+ * Fails: returns undefined where the entangler cannot reach the class in a few uses: it does not entangle.
  */
 import { type GateOperation, gate, unitaryGate } from '../circuit/circuit.ts';
+import { PAULI } from '../circuit/gates.ts';
 import { applyGateInto, gateMatrix } from '../circuit/unitary.ts';
 import { adjoint, identity, kron, mul } from '../numeric/complex-matrix.ts';
+import { hermitianEigen } from '../numeric/hermitian-eigen.ts';
 import type { Entangler } from '../reshape/template.ts';
 import { entanglerMatrix } from '../reshape/template.ts';
 import { type Canonical, canonical, cxCount, WALL_TOLERANCE } from './canonical.ts';
+import { fittedCore } from './fitted-pair.ts';
 
 const QUARTER = Math.PI / 4;
 
@@ -45,27 +49,47 @@ export function entanglerUse(entangler: Entangler): EntanglerUse {
   return isCx ? { kind: 'cx-like', entangler, frame } : { kind: 'other', entangler };
 }
 
+/**
+ * The open angles that one more use of the entangler brings to a circuit, at most 6: the single-wire rotations before it,
+ * less those that pass it as single-wire rotations, and its own angle. 4 for a CX.
+ */
+export function anglesEach(entangler: Entangler): number {
+  const e = entanglerMatrix(entangler, 0.7);
+  const { X, Y, Z, I } = PAULI;
+  const singles = [X, Y, Z].flatMap((p) => [kron(p, I, 2, 2), kron(I, p, 2, 2)]);
+  const pairs = [X, Y, Z].flatMap((p) => [X, Y, Z].map((q) => kron(p, q, 2, 2)));
+  // how much of each single-wire generator becomes a two-wire one
+  const rows = singles.map((p) => {
+    const moved = mul(e, mul(p, adjoint(e, 4), 4), 4);
+    return pairs.map((q) => q.reduce((sum, x, k) => sum + x * moved[k]!, 0) / 4);
+  });
+  const gram = new Float64Array(72);
+  rows.forEach((a, i) => {
+    rows.forEach((b, j) => {
+      gram[i * 6 + j] = a.reduce((sum, x, k) => sum + x * b[k]!, 0);
+    });
+  });
+  const rank = hermitianEigen(gram, 6).values.filter((x) => x > 1e-9).length;
+  return rank + (entangler.angle === 'free' ? 1 : 0);
+}
+
 /** Fewest uses of the entangler for this gate, or undefined where this file cannot tell. */
 export function usesNeeded(u: Float64Array, use: EntanglerUse): number | undefined {
   const { c } = canonical(u);
   if (use.kind === 'cx-like') return cxCount(c);
   if (use.kind === 'adjustable') return c.filter((x) => Math.abs(x) > WALL_TOLERANCE).length;
-  return Math.max(...c.map(Math.abs)) < WALL_TOLERANCE ? 0 : undefined;
+  return fittedCore(c, use.entangler)?.filter(({ wires }) => wires.length === 2).length;
 }
 
 /** The gate in uses of the entangler and single-wire unitaries; undefined for entanglers of other classes. */
 export function twoWireGates(u: Float64Array, use: EntanglerUse): GateOperation[] | undefined {
   const wanted = canonical(u);
-  const [c1, c2, c3] = wanted.c;
   const core = coreFor(wanted.c, use);
   if (!core) return undefined;
   if (core.length === 0) {
     // a product: both local layers at once
-    const rest = mul(kron(wanted.a1, wanted.a2, 2, 2), kron(wanted.b1, wanted.b2, 2, 2), 4);
-    void rest;
     return local(mul(wanted.a1, wanted.b1, 2), mul(wanted.a2, wanted.b2, 2));
   }
-  void [c1, c2, c3];
   const made = canonical(matrixOf(core));
   // u = A N B, core = A' N B'
   const before = local(
@@ -95,7 +119,7 @@ function coreFor(
 ): GateOperation[] | undefined {
   if (Math.max(c1, c2, Math.abs(c3)) < WALL_TOLERANCE) return [];
   if (use.kind === 'adjustable') return adjustableCore([c1, c2, c3], use);
-  if (use.kind !== 'cx-like') return undefined;
+  if (use.kind !== 'cx-like') return fittedCore([c1, c2, c3], use.entangler);
   const cx = (): GateOperation[] => asCx(use);
   const count = cxCount([c1, c2, c3]);
   if (count === 1) return cx();

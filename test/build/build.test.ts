@@ -11,7 +11,7 @@ import {
 import { circuitUnitary } from '../../src/circuit/unitary.ts';
 import { jobTable } from '../../src/job-table.ts';
 import { inProcess } from '../../src/jobs.ts';
-import { dimensionBound } from '../../src/native/synthesise.ts';
+import { dimensionBound } from '../../src/native/wanted.ts';
 import { hilbertSchmidtDistance } from '../../src/numeric/distance.ts';
 import { random } from '../../src/numeric/random.ts';
 import { haarUnitary } from '../../src/numeric/svd.ts';
@@ -133,10 +133,10 @@ describe('states and isometries', () => {
 
   test('bounds by counting, as published', () => {
     // Shende, Markov, Bullock (2004) and Iten et al., PRA 93, 032318 (2016)
-    expect([2, 3, 4, 5].map((n) => dimensionBound(n, 2 ** n, true))).toEqual([3, 14, 61, 252]);
-    expect([2, 3, 4, 5].map((n) => dimensionBound(n, 1, true))).toEqual([1, 2, 6, 13]);
-    expect([dimensionBound(3, 2, true), dimensionBound(3, 4, true)]).toEqual([5, 10]);
-    expect([dimensionBound(4, 2, true), dimensionBound(4, 4, true)]).toEqual([13, 26]);
+    expect([2, 3, 4, 5].map((n) => dimensionBound(n, 2 ** n, 4))).toEqual([3, 14, 61, 252]);
+    expect([2, 3, 4, 5].map((n) => dimensionBound(n, 1, 4))).toEqual([1, 2, 6, 13]);
+    expect([dimensionBound(3, 2, 4), dimensionBound(3, 4, 4)]).toEqual([5, 10]);
+    expect([dimensionBound(4, 2, 4), dimensionBound(4, 4, 4)]).toEqual([13, 26]);
   });
 });
 

@@ -7,6 +7,7 @@ import {
   unitaryGate,
 } from '../../src/circuit/circuit.ts';
 import { circuitUnitary } from '../../src/circuit/unitary.ts';
+import { goRound } from '../../src/native/links.ts';
 import { multiplexedRotation } from '../../src/native/multiplexed.ts';
 import { nativeSetOf } from '../../src/native/native-set.ts';
 import { shannonCount, shannonGates } from '../../src/native/shannon.ts';
@@ -130,4 +131,29 @@ test('three controls take 14 CX', () => {
   const native = toNative(operations, 4, set);
   expect(cxOf(native)).toBe(14);
   expect(gap(unitaryOf(operations, 4), unitaryOf(native, 4))).toBeLessThan(1e-14);
+});
+
+test('gates between wires that are not linked go round', () => {
+  const draw = random(5, 'links');
+  const line = [
+    [0, 1],
+    [1, 2],
+    [2, 3],
+    [3, 4],
+  ] as const;
+  const cases: [GateOperation, number][] = [
+    [gate('cx', [0, 2]), 4],
+    [gate('cx', [4, 0]), 12],
+    [gate('cz', [1, 4]), 8],
+    [unitaryGate(haarUnitary(4, draw), [3, 0]), 5],
+    [gate('cx', [2, 3]), 1],
+  ];
+  for (const [operation, count] of cases) {
+    const found = goRound([operation], line, 5);
+    expect(cxOf(found)).toBe(count);
+    for (const { wires } of found) {
+      if (wires.length === 2) expect(Math.abs(wires[0]! - wires[1]!)).toBe(1);
+    }
+    expect(gap(unitaryOf([operation], 5), unitaryOf(found, 5))).toBeLessThan(1e-14);
+  }
 });
