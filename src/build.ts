@@ -19,10 +19,11 @@ import { type ContractOptions, contractName } from './contract.ts';
 import { type Control, freeRunning } from './control.ts';
 import { InputError } from './input-error.ts';
 import type { RunJobs } from './jobs.ts';
+import { canonical, makhlinInvariants } from './native/canonical.ts';
 import { type CustomEntangler, type NativeSet, nativeSetOf } from './native/native-set.ts';
 import { synthesise } from './native/synthesise.ts';
 import { toNative } from './native/to-native.ts';
-import { type Wanted, wantedDistance } from './native/wanted.ts';
+import { isWhole, type Wanted, wantedDistance } from './native/wanted.ts';
 import { distanceAngle, processInfidelity } from './numeric/distance.ts';
 import type { BuildReport } from './reports.ts';
 
@@ -43,6 +44,7 @@ export type BuildOptions = ContractOptions & {
 export const BUILD_WIRES_MAX = 8;
 /** Circuits on more wires keep their own gates. */
 const CIRCUIT_WIRES_MAX = 5;
+const CLASS_ROUNDING = 1e-14;
 
 export async function buildTarget(
   target: Circuit,
@@ -108,11 +110,24 @@ export async function buildTarget(
         bound: found.bound,
         boundKind: found.boundKind,
       },
+      canonical: classOf(wanted),
       frontier: found.frontier,
       fits: found.fits,
       native: set.text,
       files: [],
     },
+  };
+}
+
+/** The class of a whole two-wire target; numbers that are rounding of zero are zero. */
+function classOf(wanted: Wanted): BuildReport['canonical'] {
+  if (wanted.wires !== 2 || !isWhole(wanted)) return null;
+  const plain = (x: number): number => (Math.abs(x) < CLASS_ROUNDING ? 0 : x);
+  const [c1, c2, c3] = canonical(wanted.matrix).c.map((c) => plain(c / (Math.PI / 4)));
+  const { g1, g2 } = makhlinInvariants(wanted.matrix);
+  return {
+    coordinates: [c1!, c2!, c3!],
+    makhlin: [plain(g1[0]), plain(g1[1]), plain(g2)],
   };
 }
 
@@ -187,6 +202,7 @@ function converted(
       counts,
       distance: { hilbertSchmidt: 0, processInfidelity: 0, worstCase: null, angle: 0 },
       entanglers: { used: counts.twoQubit, bound: 0, boundKind: 'found' },
+      canonical: null,
       frontier: [],
       fits: [],
       native: set.text,

@@ -76,6 +76,13 @@ export type FitRow = {
   status: string;
 };
 
+/** A window of a large circuit that was reshaped: its wires (lines of single qubits, from 0), and what became of its gates. */
+export type WindowRow = {
+  wires: number[];
+  gates: { before: number; after: number };
+  entanglers: { before: number; after: number };
+};
+
 export type NarrowReport = Head<'narrow'> & {
   circuit: string;
   verdict: 'narrowed' | 'impossible' | 'undecided';
@@ -90,6 +97,7 @@ export type NarrowReport = Head<'narrow'> & {
   native: string;
   estimate: { before: number; after: number } | null;
   fits: FitRow[];
+  windows: WindowRow[];
   files: string[];
 };
 
@@ -133,6 +141,13 @@ export type BuildReport = Head<'build'> & {
     /** How the count is known: meets a theorem's bound, every smaller skeleton was tried, or just found. */
     boundKind: 'proven' | 'exhausted below' | 'found';
   };
+  /** For whole two-wire targets: which class of gates that are equal up to single-wire gates it is in; else null. */
+  canonical: {
+    /** c1 >= c2 >= |c3| of exp(i(c1 XX + c2 YY + c3 ZZ)), in units of pi/4. */
+    coordinates: [number, number, number];
+    /** Re G1, Im G1, G2. */
+    makhlin: [number, number, number];
+  } | null;
   frontier: { entanglers: number; distance: number }[];
   fits: FitRow[];
   native: string;

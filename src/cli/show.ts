@@ -9,6 +9,7 @@ import type {
   NarrowReport,
   Stretch,
   SurveyReport,
+  WindowRow,
 } from '../reports.ts';
 import { outputColours as pc } from './colours.ts';
 
@@ -172,7 +173,7 @@ function showNarrow(report: NarrowReport): string {
       bracket.reached === null ? 'nothing reached' : `reached ${small(bracket.reached)}`;
     lines.push(`bracket: D is at least ${small(bracket.lower)}, ${reached}`);
   }
-  lines.push(...fitLines(fits));
+  lines.push(...windowLines(report.windows), ...fitLines(fits));
   if (check) {
     const proof = check.proof ? 'a proof' : 'no proof';
     lines.push(`check: ${check.method} (${proof}), ${wires(check.unfoldedWires)} unfolded, D = ${small(check.distance)}`); // biome-ignore format: one line
@@ -181,6 +182,12 @@ function showNarrow(report: NarrowReport): string {
     lines.push(`estimated success on the device: ${small(estimate.before)} before, ${small(estimate.after)} after`); // biome-ignore format: one line
   }
   return [...lines, ...noteLines(report.notes), ''].join('\n');
+}
+
+function windowLines(windows: readonly WindowRow[]): string[] {
+  if (windows.length === 0) return [];
+  const rows = windows.map(({ wires: on, gates, entanglers }, k) => [k, on.join(' '), gates.before, gates.after, entanglers.before, entanglers.after]); // biome-ignore format: one row
+  return ['', table(['window', 'on wires', 'gates before', 'after', 'entanglers before', 'after'], rows)]; // biome-ignore format: one table
 }
 
 function fitLines(fits: readonly FitRow[]): string[] {
@@ -228,12 +235,23 @@ function showCompare(report: CompareReport): string {
   return [...lines, ...noteLines(report.notes), ''].join('\n');
 }
 
+function classLines({ coordinates, makhlin }: NonNullable<BuildReport['canonical']>): string[] {
+  const digits = (x: number): string => String(Number(x.toFixed(9)));
+  const [re, im, g2] = makhlin;
+  const g1 =
+    im === 0 ? digits(re) : `${digits(re)}${im < 0 ? ' - ' : ' + '}${digits(Math.abs(im))}i`;
+  return [
+    `class (${coordinates.map(digits).join(', ')}) in units of pi/4; invariants G1 = ${g1}, G2 = ${digits(g2)}`,
+  ];
+}
+
 function showBuild(report: BuildReport): string {
   const { verdict, entanglers, counts, frontier } = report;
   const lines = [`${pc.bold(report.target)}: ${verdict} in ${report.native}`];
   lines.push(
     `${entanglers.used} entanglers (${entanglers.boundKind}${entanglers.bound > 0 ? `; at least ${entanglers.bound} are needed` : ''})`,
   );
+  if (report.canonical) lines.push(...classLines(report.canonical));
   lines.push(...distanceLines(report.distance), '', countRows([['circuit', counts]]));
   if (frontier.length > 1) {
     const rows = frontier.map(({ entanglers: count, distance }) => [count, small(distance)]);

@@ -98,6 +98,28 @@ describe('whole unitaries', () => {
   });
 });
 
+describe('the class of a two-wire target', () => {
+  // Makhlin, Quantum Inf. Process. 1, 243 (2002); the coordinates of Zhang, Vala, Sastry, Whaley, PRA 67, 042313 (2003)
+  test.each([
+    ['swap', [1, 1, 1], [-1, 0, -3]],
+    ['b-gate', [1, 0.5, 0], [0, 0, 0]],
+    ['sqrt-iswap', [0.5, 0.5, 0], [0.25, 0, 1]],
+    ['fourier-2', [1, 1, 0.5], [-0.5, 0, -2]],
+  ])('%s', async (name, coordinates, makhlin) => {
+    const { canonical } = (await buildTarget(reference(name), { runJobs })).report;
+    coordinates.forEach((c, k) => {
+      expect(canonical!.coordinates[k]).toBeCloseTo(c, 12);
+    });
+    makhlin.forEach((g, k) => {
+      expect(canonical!.makhlin[k]).toBeCloseTo(g, 12);
+    });
+  });
+
+  test('others have none', async () => {
+    expect((await buildTarget(reference('peres'), { runJobs })).report.canonical).toBeNull();
+  });
+});
+
 describe('states and isometries', () => {
   // Znidaric, Giraud, Georgeot, PRA 77, 032320 (2008): 3 CX for states of 3 wires
   test.each([
