@@ -26,7 +26,7 @@ import {
 } from './plan/assemble.ts';
 import { bestAt } from './plan/frontier.ts';
 import { readCircuit } from './read/openqasm.ts';
-import type { CompareReport, FitRow, NarrowReport } from './reports.ts';
+import type { CompareReport, FitRow, NarrowReport, WindowRow } from './reports.ts';
 import { reshape } from './reshape/reshape.ts';
 import { chooseRoad, figures, type Road, type Wish } from './reshape/road.ts';
 import { reshapeWindows } from './reshape/window-chains.ts';
@@ -74,11 +74,12 @@ type Job = {
   notes: string[];
 };
 
-type Gates = { narrowed: NarrowedCircuit; fits: FitRow[] };
+type Gates = { narrowed: NarrowedCircuit; fits: FitRow[]; windows?: WindowRow[] };
 
 type Rewritten = {
   narrowed: NarrowedCircuit;
   fits: FitRow[];
+  windows: WindowRow[];
   text: string;
   check: CompareReport & { unfoldedWires: number };
 };
@@ -92,12 +93,12 @@ export async function narrow(original: Circuit, options: NarrowOptions): Promise
   const { road, rewriting } = await alongRoad(job, { ...wish, stopped: control.stopped });
   if (rewriting === null) return answer(job, road, null);
   if (typeof rewriting === 'string') return answer(job, closedAfterAll(road, rewriting), null);
-  const { narrowed, fits } = rewriting;
+  const { narrowed, fits, windows = [] } = rewriting;
   control.report({ stage: 'checking the written text' });
   const text = writeCircuit(narrowed.circuit);
   const { circuit } = readCircuit(text, narrowed.circuit.name);
   const check = compareCircuits(original, circuit, { contract: options, tolerance, seed });
-  return answer(job, road, { narrowed: { ...narrowed, circuit }, fits, text, check });
+  return answer(job, road, { narrowed: { ...narrowed, circuit }, fits, windows, text, check });
 }
 
 function settle(original: Circuit, options: NarrowOptions): Job {
@@ -180,6 +181,7 @@ async function throughWindows(
   return {
     narrowed: options.nativeAsked ? inNativeGates(narrowed, contract, native) : narrowed,
     fits: reshaped.fits,
+    windows: reshaped.windows,
   };
 }
 
@@ -257,6 +259,7 @@ function answer(job: Job, road: Road, done: Rewritten | null): Narrowed {
     native: job.native.text,
     estimate: estimateOf(original, circuit, options.device, job.notes),
     fits: done?.fits ?? [],
+    windows: done?.windows ?? [],
     files: [],
   };
   return { report, text: done?.text ?? null, circuit };

@@ -57,17 +57,18 @@ export function findWindows(
     const own = operationWires(node.operation);
     if (own.length < 2 || own.length > wiresMax) return;
     for (const carriers of carrierSets(circuit, lines, start, wiresMax, setsMax)) {
-      const nodes = grow(circuit, lines, start, carriers);
-      const key = nodes.join();
-      if (nodes.length < 2 || seen.has(key)) continue;
-      seen.add(key);
-      const candidate = measureWindow(circuit, nodes, axesOf);
-      if (!candidate || candidate.gain <= 0) continue;
-      found.push(candidate);
-      const core = shrunk(circuit, candidate, axesOf);
-      if (seen.has(core.nodes.join())) continue;
-      seen.add(core.nodes.join());
-      found.push(core);
+      for (const nodes of grown(circuit, lines, start, carriers)) {
+        const key = nodes.join();
+        if (nodes.length < 2 || seen.has(key)) continue;
+        seen.add(key);
+        const candidate = measureWindow(circuit, nodes, axesOf);
+        if (!candidate || candidate.gain <= 0) continue;
+        found.push(candidate);
+        const core = shrunk(circuit, candidate, axesOf);
+        if (seen.has(core.nodes.join())) continue;
+        seen.add(core.nodes.join());
+        found.push(core);
+      }
     }
   });
   return found;
@@ -162,15 +163,17 @@ function placeFrom(line: readonly number[], node: number): number {
   return low;
 }
 
-function grow(
+/** All around the start, and only what comes before it or after it: gates behind a window may tie again what it leaves open. */
+function grown(
   circuit: LifeCircuit,
   lines: Lines,
   start: number,
   carriers: readonly number[],
-): number[] {
+): number[][] {
   const after = growAlong(circuit, lines, start, carriers, 1, GATES_MAX);
   const before = growAlong(circuit, lines, start, carriers, -1, GATES_MAX);
-  return [...before, ...after].sort((a, b) => a - b);
+  const sorted = (nodes: number[]): number[] => nodes.sort((a, b) => a - b);
+  return [sorted([...before, ...after]), sorted([...before, start]), sorted(after)];
 }
 
 /** The gates from `start` on that can happen as one, in order; nodes marked in `taken` stay outside. */
