@@ -20,6 +20,7 @@ import {
 import { gateMatrix } from '../circuit/unitary.ts';
 import { identity } from '../numeric/complex-matrix.ts';
 import { entering, leaving } from './annotations.ts';
+import { substituted } from './bit-terms.ts';
 
 export type LineGate = {
   lines: readonly number[];
@@ -248,16 +249,7 @@ class LineWalk {
   }
 
   private overLines(expression: BitExpression): BitExpression {
-    switch (expression.kind) {
-      case 'constant':
-        return expression;
-      case 'bit':
-        return this.bits[expression.bit]!;
-      case 'not':
-        return { kind: 'not', of: this.overLines(expression.of) };
-      default:
-        return { kind: expression.kind, of: expression.of.map((part) => this.overLines(part)) };
-    }
+    return substituted(expression, (bit) => this.bits[bit]!);
   }
 
   finish(): Lines {

@@ -27,6 +27,7 @@ import type { Contract } from '../contract.ts';
 import { InputError } from '../input-error.ts';
 import { mul } from '../numeric/complex-matrix.ts';
 import { entering, isAnnotated, leaving } from './annotations.ts';
+import { combined, negated, substituted } from './bit-terms.ts';
 
 /** 2^24 complex numbers, 256 MiB, for each of the two circuits. */
 export const UNFOLDED_BITS_MAX = 24;
@@ -324,16 +325,7 @@ class Unfolding {
   }
 
   private overAxes(expression: BitExpression): BitExpression {
-    switch (expression.kind) {
-      case 'constant':
-        return expression;
-      case 'bit':
-        return this.bits[expression.bit]!;
-      case 'not':
-        return { kind: 'not', of: this.overAxes(expression.of) };
-      default:
-        return { kind: expression.kind, of: expression.of.map((part) => this.overAxes(part)) };
-    }
+    return substituted(expression, (bit) => this.bits[bit]!);
   }
 
   finish(): Unfolded {
@@ -406,13 +398,10 @@ function chosen(
   otherwise: BitExpression,
 ): BitExpression {
   if (!condition) return value;
-  return {
-    kind: 'or',
-    of: [
-      { kind: 'and', of: [condition, value] },
-      { kind: 'and', of: [{ kind: 'not', of: condition }, otherwise] },
-    ],
-  };
+  return combined('or', [
+    combined('and', [condition, value]),
+    combined('and', [negated(condition), otherwise]),
+  ]);
 }
 
 /**
