@@ -106,10 +106,9 @@ class DeviceReader {
         );
       }
     });
-    const mentioned = Math.max(
-      listed.length,
-      ...links.flatMap(({ between }) => between.map((w) => w + 1)),
-    );
+    let mentioned = listed.length;
+    for (const { between } of links)
+      mentioned = Math.max(mentioned, between[0] + 1, between[1] + 1);
     const count = this.wireCount(top.wireCount, mentioned);
     const wires = Array.from({ length: count }, (_, k) => listed[k] ?? { ...allWires });
     return {

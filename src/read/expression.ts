@@ -10,8 +10,8 @@
  * ' (conjugate transpose). A matrix to a fractional power needs a unitary matrix: the principal power.
  * expm: through the eigenvectors for i times a Hermitian matrix, else Taylor series with scaling and squaring
  * (Moler, Van Loan, SIAM Review 45, 3 (2003), method 3).
- * Fails: InputError with the column where it is known; sizes beyond `EXPRESSION_SIZE_MAX` rows are refused
- * before they are computed.
+ * Fails: InputError with the column where it is known; sizes beyond `EXPRESSION_SIZE_MAX` rows and more work than
+ * `EXPRESSION_WORK_MAX` are refused before they are computed.
  */
 import { gateTable } from '../circuit/gates.ts';
 import { InputError, nearestWord } from '../input-error.ts';
@@ -30,6 +30,8 @@ import type { ReadMatrix } from './matrix-market.ts';
 export const EXPRESSION_SIZE_MAX = 256;
 export const EXPRESSION_LENGTH_MAX = 100_000;
 const NESTING_MAX = 200;
+/** Multiplications of two numbers in the matrix products of one expression: 60 products of 256 x 256 matrices. */
+export const EXPRESSION_WORK_MAX = 1e9;
 
 /** What we use of a parsed node: mathjs's own types are wider and need its DOM-free build to be loaded. */
 type Node = {
@@ -62,7 +64,7 @@ export async function readExpression(text: string): Promise<ReadMatrix> {
       hint: 'for example: kron(h, id) * cx',
     });
   }
-  return evaluate(root);
+  return evaluate(root, { work: 0 });
 }
 
 function lowerFirst(text: string): string {
@@ -110,10 +112,39 @@ function shownConstant(value: unknown): string {
   return (typeof value === 'string' ? JSON.stringify(value) : String(value)).slice(0, 60);
 }
 
-function evaluate(node: Node, depth = 0): Value {
+/** What the expression has cost so far, in multiplications of numbers. */
+type Spent = { work: number };
+
+/** Counts an operation before it is done; its cost is that of the slowest way it may take. */
+function spend(spent: Spent, name: string, args: readonly Value[]): void {
+  const [a, b] = args;
+  if (!a) return;
+  const cube = a.rows * a.columns * Math.max(a.rows, a.columns);
+  const size = args.reduce((product, { rows, columns }) => product * rows * columns, 1);
+  const exponent = Math.log2(2 + Math.abs(b?.matrix[0] ?? 0));
+  // a number of a sum takes as long as about thirty multiplications of a product
+  const costs: { readonly [name: string]: number } = {
+    multiply: a.rows * a.columns * (b?.columns ?? 1),
+    divide: 2 * (b ? b.rows ** 3 : 1) + cube,
+    pow: cube * (20 + 2 * Math.min(exponent, 32)),
+    expm: 20 * cube,
+    inv: 2 * cube,
+    kron: size,
+  };
+  const isListed = Object.hasOwn(costs, name);
+  spent.work += args.every(isScalar) ? 1 : isListed ? costs[name]! : 30 * a.rows * a.columns;
+  if (spent.work <= EXPRESSION_WORK_MAX) return;
+  fail(
+    'too-large',
+    `an expression of more than ${EXPRESSION_WORK_MAX} multiplications of numbers`,
+    'compute it beforehand and write it to a .mtx file',
+  );
+}
+
+function evaluate(node: Node, spent: Spent, depth = 0): Value {
   if (depth > 10 * NESTING_MAX)
     fail('too-deep', 'expected a shorter expression, got one nested too deeply');
-  const inner = (child: Node): Value => evaluate(child, depth + 1);
+  const inner = (child: Node): Value => evaluate(child, spent, depth + 1);
   switch (node.type) {
     case 'ConstantNode':
       if (typeof node.value === 'number' && Number.isFinite(node.value)) return scalar(node.value);
@@ -125,10 +156,12 @@ function evaluate(node: Node, depth = 0): Value {
     case 'ArrayNode':
       return matrixOf(node, inner);
     case 'OperatorNode':
-      return operator(node, (node.args ?? []).map(inner));
+      return operator(node, spent, (node.args ?? []).map(inner));
     case 'FunctionNode': {
       const name = typeof node.fn === 'object' ? ((node.fn as Node).name ?? '') : String(node.fn);
-      return named(name, (node.args ?? []).map(inner));
+      const args = (node.args ?? []).map(inner);
+      spend(spent, name, args);
+      return named(name, args);
     }
     default:
       return fail(
@@ -173,7 +206,8 @@ function tooLarge(rows: number, columns: number): never {
   );
 }
 
-function operator(node: Node, args: readonly Value[]): Value {
+function operator(node: Node, spent: Spent, args: readonly Value[]): Value {
+  spend(spent, String(node.fn), args);
   const [a, b] = args;
   if (args.length === 1 && a) {
     if (node.fn === 'unaryMinus') return times(scalar(-1), a);

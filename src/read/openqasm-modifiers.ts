@@ -99,7 +99,8 @@ export function powerPiece(
     }
     spend(r, at, times * operations.length);
     const repeated: Piece['operations'] = [];
-    for (let k = 0; k < times; k++) repeated.push(...base.operations);
+    for (let k = 0; k < times; k++)
+      for (const operation of base.operations) repeated.push(operation);
     return { operations: repeated, phase: phase * exponent };
   }
   if (single && phase === 0 && single.power === 1) {
