@@ -13,7 +13,7 @@ import {
   readCertificate,
 } from '../check/certificate.ts';
 import { COMPARE_TOLERANCE } from '../check/compare.ts';
-import type { CommandRequest, CommandResult, CommonOptions } from '../commands.ts';
+import type { CommandRequest, CommandResult, CommonOptions, Source } from '../commands.ts';
 import type { InputRule, OutputRule } from '../contract.ts';
 import { formatProblem, InputError, nearestWord } from '../input-error.ts';
 import { type Captioned, pictureSheet } from '../write/picture-sheet.ts';
@@ -189,16 +189,26 @@ async function compareFiles(
       if (report.schema !== 'wiregauge/compare@1') return null;
       if (words.certificate) {
         const tolerance = asked.tolerance ?? COMPARE_TOLERANCE;
-        const made = certificateOf(report, texts, { ...asked, tolerance }, VERSION);
+        const made = certificateOf(
+          report,
+          { original: named(texts.original), rewritten: named(texts.rewritten) },
+          { ...asked, tolerance },
+          VERSION,
+        );
         writeWhole(words.certificate, `${JSON.stringify(made, null, 2)}\n`);
       }
       if (!known) return null;
-      const wrong = disagreements(known, report);
+      const wrong = disagreements(known, report, VERSION);
       const held = wrong.length === 0 ? 'the certificate holds' : `the certificate does not hold: ${wrong.join('; ')}`; // biome-ignore format: one sentence
       report.notes.push(held);
       return wrong.length === 0 ? 0 : 1;
     },
   );
+}
+
+/** An expression goes by its text, so that a recheck finds it again. */
+function named({ name, text, isExpression }: Source): { name: string; text: string } {
+  return { name: isExpression ? text : name, text };
 }
 
 function askedBy({ asked }: Certificate): CommonOptions & { relabel?: boolean; map?: string } {
@@ -210,7 +220,7 @@ function askedBy({ asked }: Certificate): CommonOptions & { relabel?: boolean; m
     ...(map === undefined ? {} : { map }),
     ...(inputs ? { inputs } : {}),
     ...(outputs ? { outputs } : {}),
-    // the rules were checked when the certificate was made
+    // the rules were checked when the certificate was read
     ...(inputOf ? { inputOf: new Map(inputOf as [number, InputRule][]) } : {}),
     ...(outputOf ? { outputOf: new Map(outputOf as [number, OutputRule][]) } : {}),
   };
