@@ -93,6 +93,8 @@ export class Search {
   private readonly generic: number;
   private readonly anglesEach: number;
   private isExhausted = true;
+  /** Random starts for every smaller placement, at least, where all were tried. */
+  private starts = 0;
 
   constructor(wanted: Wanted, options: SynthesisOptions) {
     this.wanted = wanted;
@@ -179,8 +181,9 @@ export class Search {
       this.isExhausted = false;
       return found.best;
     }
-    const { best, isExhausted } = await descend(found.best, { ...this.fitting, ...limits });
+    const { best, isExhausted, starts } = await descend(found.best, { ...this.fitting, ...limits });
     this.isExhausted = isExhausted;
+    this.starts = starts;
     this.note([best]);
     return best;
   }
@@ -286,12 +289,21 @@ export class Search {
           status: best.status,
         },
       ],
-      notes: isGeneric
-        ? ['the bound holds for generic targets of this size (dimension counting)']
-        : this.anglesEach === 4
-          ? []
-          : [`each use of ${this.options.entangler.name} brings ${this.anglesEach} open angles`],
+      notes: this.exhaustedNotes(found, isProven).concat(
+        isGeneric
+          ? ['the bound holds for generic targets of this size (dimension counting)']
+          : this.anglesEach === 4
+            ? []
+            : [`each use of ${this.options.entangler.name} brings ${this.anglesEach} open angles`],
+      ),
       isStopped: this.options.control.stopped(),
     };
+  }
+
+  private exhaustedNotes(found: Placement | null, isProven: boolean): string[] {
+    if (!found || !this.isExhausted || isProven || this.starts === 0) return [];
+    return [
+      `every placement of fewer entanglers was tried, with at least ${this.starts} starts each: evidence, not proof`,
+    ];
   }
 }

@@ -35,6 +35,8 @@ export type FitJob = Job & {
   /** Stop once D is at most this. */
   goal: number;
   iterationsMax: number;
+  /** For `lm`: give up when D falls too little over this many iterations; its own default without. */
+  stallIterations?: number;
 };
 
 export type FitResult = {
@@ -55,6 +57,7 @@ export async function fitBlock(job: FitJob, control: Control = freeRunning): Pro
   const run = minimise(job, objective, start, {
     goal: objective.valueOf(job.goal),
     iterationsMax: job.iterationsMax,
+    ...(job.stallIterations === undefined ? {} : { stallIterations: job.stallIterations }),
     control,
     onIteration: (iteration: number, value: number) => {
       const distance = objective.distance(value);

@@ -11,6 +11,7 @@
 import type { Control } from '../control.ts';
 import type { RunJobs } from '../jobs.ts';
 import type { FitJob, FitResult, FitTarget } from './fit-block.ts';
+import { mirrored, type Symmetry, symmetriesOf } from './placement-symmetry.ts';
 import { angleCount, type Template } from './template.ts';
 
 export type Pair = readonly [number, number];
@@ -33,6 +34,8 @@ export type FitSettings = {
   optimiser: FitJob['optimiser'];
   runJobs: RunJobs;
   control: Control;
+  /** As in `FitJob`. */
+  stallIterations?: number;
 };
 
 export type BeamSettings = FitSettings & {
@@ -43,6 +46,8 @@ export type BeamSettings = FitSettings & {
 };
 
 const BEAM = 12;
+/** Symmetries are looked for on at most this many wires. */
+const SYMMETRY_WIRES_MAX = 3;
 const ITERATIONS_MAX = 400;
 /** Standard deviation that breaks the symmetry of a warm start, in radians. */
 const PERTURBATION = 0.3;
@@ -82,13 +87,17 @@ export async function beamOfPlacements(settings: BeamSettings): Promise<BeamResu
 /** The most fits that one count may take when every placement is tried. */
 const EXHAUSTIVE_FITS_MAX = 4400;
 /** Random starts for each placement then: at least, and at most. */
-export const EXHAUSTIVE_STARTS_MIN = 2;
-const EXHAUSTIVE_STARTS_MAX = 5;
+const EXHAUSTIVE_STARTS_MIN = 2;
+const EXHAUSTIVE_STARTS_MAX = 6;
+/** Most of these fits lead nowhere: one that gains less than 5 % in this many iterations is given up. */
+const EXHAUSTIVE_STALL_ITERATIONS = 20;
 
 export type Descent = {
   best: Placement;
-  /** Every placement of fewer was tried, with `EXHAUSTIVE_STARTS_MIN` starts or more each. */
+  /** Every placement of fewer was tried, up to the symmetries of the target. */
   isExhausted: boolean;
+  /** With at least this many random starts each. */
+  starts: number;
 };
 
 /**
@@ -96,12 +105,17 @@ export type Descent = {
  * all smaller ones: two equal entanglers in a row can undo each other, so m placed ones can do whatever m - 2 can.
  */
 export async function descend(found: Placement, settings: BeamSettings): Promise<Descent> {
-  const { links, tolerance, control } = settings;
+  const { links, tolerance, control, target, templateOf } = settings;
   let best = found;
   let failed = 0;
   let isComplete = true;
+  let startsLeast = EXHAUSTIVE_STARTS_MAX;
+  const { wires } = templateOf([]);
+  const isSmall = target.kind === 'unitary' && wires <= SYMMETRY_WIRES_MAX;
+  const symmetries = isSmall ? symmetriesOf(target.matrix, wires, links) : [];
   for (let count = found.pairs.length - 1; count >= 0 && failed < 2; count--) {
-    const placements = allPlacements(count, links, EXHAUSTIVE_FITS_MAX / EXHAUSTIVE_STARTS_MIN);
+    const most = EXHAUSTIVE_FITS_MAX / EXHAUSTIVE_STARTS_MIN;
+    const placements = allPlacements(count, links, most, symmetries);
     if (!placements || control.stopped()) {
       isComplete = false;
       break;
@@ -116,13 +130,18 @@ export async function descend(found: Placement, settings: BeamSettings): Promise
       placements.map((pairs) => ({ pairs, start: null })),
     ).flat();
     const label = `${settings.label}, every placement`;
-    const [nearest] = await fitPlacements(list, { ...settings, label });
+    const stallIterations = EXHAUSTIVE_STALL_ITERATIONS;
+    const [nearest] = await fitPlacements(list, { ...settings, label, stallIterations });
     if (nearest && nearest.distance <= tolerance) {
       best = nearest;
       failed = 0;
-    } else failed++;
+      startsLeast = EXHAUSTIVE_STARTS_MAX;
+    } else {
+      failed++;
+      startsLeast = Math.min(startsLeast, starts);
+    }
   }
-  return { best, isExhausted: isComplete && !control.stopped() };
+  return { best, isExhausted: isComplete && !control.stopped(), starts: startsLeast };
 }
 
 /**
@@ -158,11 +177,15 @@ export async function shorten(found: Placement, settings: FitSettings): Promise<
   return best;
 }
 
-/** All placements of this many pairs that are not wasteful, one of each key; undefined when there are more than `most`. */
+/**
+ * All placements of this many pairs that are not wasteful, one of each key and one of those that a symmetry makes alike; undefined
+ * when there are more than `most`.
+ */
 function allPlacements(
   count: number,
   links: readonly Pair[],
   most: number,
+  symmetries: readonly Symmetry[],
 ): (readonly Pair[])[] | undefined {
   let list: (readonly Pair[])[] = [[]];
   for (let k = 0; k < count; k++) {
@@ -173,18 +196,24 @@ function allPlacements(
         const key = placementKey(longer);
         if (!isWasteful(longer) && !seen.has(key)) seen.set(key, longer);
       }
-      if (seen.size > most) return undefined;
+      if (seen.size > most * (1 + symmetries.length)) return undefined;
     }
     list = [...seen.values()];
   }
-  return list;
+  const first = list.filter((pairs) => {
+    const key = placementKey(pairs);
+    return symmetries.every((symmetry) => placementKey(mirrored(pairs, symmetry)) >= key);
+  });
+  return first.length > most ? undefined : first;
 }
 
 /** Fits placements, from the angles given or from random starts; nearest first, ties in list order. */
 export async function fitPlacements(
   list: readonly { pairs: readonly Pair[]; start: Float64Array | null }[],
-  { label, target, templateOf, tolerance, seed, optimiser, runJobs, control }: FitSettings,
+  settings: FitSettings,
 ): Promise<Placement[]> {
+  const { label, target, templateOf, tolerance, seed, optimiser, runJobs, control } = settings;
+  const { stallIterations } = settings;
   const jobs = list.map(({ pairs, start }, k): FitJob => {
     const template = templateOf(pairs);
     const warm = start && extended(start, angleCount(template));
@@ -198,6 +227,7 @@ export async function fitPlacements(
       optimiser,
       goal: GOAL,
       iterationsMax: ITERATIONS_MAX,
+      ...(stallIterations === undefined ? {} : { stallIterations }),
     };
   });
   const enough = (result: FitResult): boolean => result.distance <= tolerance;
