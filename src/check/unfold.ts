@@ -52,8 +52,13 @@ export type Unfolded = {
 /** At least this many bits of state index: known before anything is evolved. */
 export function unfoldedBitsLeast(circuit: Circuit, contract: Contract): number {
   const anyInputs = contract.inputs.filter((rule) => rule === 'any').length;
-  const resets = circuit.operations.filter(({ kind, condition }) => kind === 'reset' && !condition);
-  return anyInputs + (isAnnotated(circuit) ? resets.length : circuit.wires + resets.length);
+  const annotated = isAnnotated(circuit);
+  const resets = circuit.operations.filter(({ kind }) => kind === 'reset').length;
+  const copied = measurementsToCopy(circuit, contract, annotated);
+  circuit.operations.forEach(({ kind, condition }, k) => {
+    if (kind === 'measure' && condition) copied.add(k);
+  });
+  return anyInputs + resets + copied.size + (annotated ? 0 : circuit.wires);
 }
 
 /** Evolves the circuit; `inputs` rules are those of the original's wires. */

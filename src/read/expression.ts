@@ -30,8 +30,8 @@ import type { ReadMatrix } from './matrix-market.ts';
 export const EXPRESSION_SIZE_MAX = 256;
 export const EXPRESSION_LENGTH_MAX = 100_000;
 const NESTING_MAX = 200;
-/** Multiplications of two numbers in the matrix products of one expression: 60 products of 256 x 256 matrices. */
-export const EXPRESSION_WORK_MAX = 1e9;
+/** Multiplications of two numbers in the matrix products of one expression: 30 products of 256 x 256 matrices. */
+export const EXPRESSION_WORK_MAX = 5e8;
 
 /** What we use of a parsed node: mathjs's own types are wider and need its DOM-free build to be loaded. */
 type Node = {
@@ -122,7 +122,6 @@ function spend(spent: Spent, name: string, args: readonly Value[]): void {
   const cube = a.rows * a.columns * Math.max(a.rows, a.columns);
   const size = args.reduce((product, { rows, columns }) => product * rows * columns, 1);
   const exponent = Math.log2(2 + Math.abs(b?.matrix[0] ?? 0));
-  // a number of a sum takes as long as about thirty multiplications of a product
   const costs: { readonly [name: string]: number } = {
     multiply: a.rows * a.columns * (b?.columns ?? 1),
     divide: 2 * (b ? b.rows ** 3 : 1) + cube,
@@ -230,7 +229,9 @@ function dagger({ matrix, rows, columns }: Value): Value {
 
 function sum(a: Value, b: Value, sign: number): Value {
   if (a.rows !== b.rows || a.columns !== b.columns) mismatch('a sum', a, b);
-  return { ...a, matrix: a.matrix.map((x, k) => x + sign * b.matrix[k]!) };
+  const matrix = new Float64Array(a.matrix.length);
+  for (let k = 0; k < matrix.length; k++) matrix[k] = a.matrix[k]! + sign * b.matrix[k]!;
+  return { ...a, matrix };
 }
 
 function mismatch(what: string, a: Value, b: Value): never {
