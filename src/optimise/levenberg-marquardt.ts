@@ -52,7 +52,7 @@ export function* levenbergMarquardt(
   const trial = new Float64Array(p);
   const step = new Float64Array(p);
   const normal = new Float64Array(p * p);
-  const factor = new Float64Array(p * p);
+  const shift = new Float64Array(p);
   const scale = new Float64Array(p);
   const gradient = new Float64Array(p);
   let value = problem.linearise(x, normal, gradient);
@@ -82,7 +82,7 @@ export function* levenbergMarquardt(
     let isAccepted = false;
     let before = value;
     for (let attempt = 0; attempt < 40; attempt++) {
-      const predicted = solveStep(step, factor, normal, gradient, scale, damping, p);
+      const predicted = solveStep(step, shift, normal, gradient, scale, damping, p);
       if (predicted > 0) {
         for (let k = 0; k < p; k++) trial[k] = x[k]! + step[k]!;
         const next = problem.value(trial);
@@ -144,29 +144,22 @@ function diagonalInto(out: Float64Array, normal: Float64Array, p: number): numbe
 /** Solves for the step; returns the decrease that the model predicts, or -1 when the factor fails. */
 function solveStep(
   step: Float64Array,
-  factor: Float64Array,
+  shift: Float64Array,
   normal: Float64Array,
   gradient: Float64Array,
   scale: Float64Array,
   damping: number,
   p: number,
 ): number {
-  for (let k = 0; k < p; k++) step[k] = damping * scale[k]!;
-  if (!kernels.choleskyInto(factor, normal, step, p)) return -1;
-  for (let r = 0; r < p; r++) {
-    let sum = -gradient[r]!;
-    for (let k = 0; k < r; k++) sum -= factor[r * p + k]! * step[k]!;
-    step[r] = sum / factor[r * p + r]!;
+  for (let k = 0; k < p; k++) {
+    shift[k] = damping * scale[k]!;
+    step[k] = -gradient[k]!;
   }
-  for (let r = p - 1; r >= 0; r--) {
-    const value = step[r]! / factor[r * p + r]!;
-    step[r] = value;
-    for (let k = 0; k < r; k++) step[k]! -= value * factor[r * p + k]!;
-  }
+  if (!kernels.solveInto(step, normal, shift, p)) return -1;
   // F(0) - model(s) = -g s - s N s / 2 = -g s / 2 + lambda s D s / 2, as (N + lambda D) s = -g
   let predicted = 0;
   for (let k = 0; k < p; k++) {
-    predicted += step[k]! * (damping * scale[k]! * step[k]! - gradient[k]!);
+    predicted += step[k]! * (shift[k]! * step[k]! - gradient[k]!);
   }
   return predicted / 2;
 }

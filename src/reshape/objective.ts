@@ -19,6 +19,12 @@ import { assert } from '../assert.ts';
 import { gateTable } from '../circuit/gates.ts';
 import { adjoint, mulInto } from '../numeric/complex-matrix.ts';
 import { kernels } from '../numeric/kernels/kernels.ts';
+import {
+  applyPair,
+  rotateRows,
+  type Sweep,
+  swapControlled,
+} from '../numeric/kernels/plain-sweep.ts';
 import type { NormalProblem } from '../optimise/levenberg-marquardt.ts';
 import { angleCount, entanglerMatrix, type Template } from './template.ts';
 
@@ -49,6 +55,11 @@ export class FitObjective implements NormalProblem {
   private readonly rows: Float64Array;
   private readonly residual: Float64Array;
   private readonly frozen: Uint8Array | undefined;
+  /** The steps for the kernels; undefined where an entangler has an angle of its own. */
+  private readonly sweep: Sweep | undefined;
+  /** The target where the kernels do the whole work: a unitary, and steps they know. */
+  private readonly direct: Float64Array | undefined;
+  private readonly turns: Float64Array;
 
   constructor(template: Template, target: FitTarget, frozen?: Uint8Array) {
     const n = template.wires;
@@ -62,8 +73,11 @@ export class FitObjective implements NormalProblem {
     this.w = new Float64Array(2 * d * d);
     this.half = new Float64Array(d * d);
     this.hermitian = new Float64Array(2 * d * d);
+    this.turns = new Float64Array(2 * this.size);
+    this.sweep = sweepOf(this.steps, d, this.size);
+    this.direct = target.kind === 'unitary' && this.sweep ? target.matrix : undefined;
     const width = this.residualWidth();
-    this.rows = new Float64Array(this.size * width);
+    this.rows = new Float64Array(this.direct ? 0 : this.size * width);
     this.residual = new Float64Array(width);
   }
 
@@ -89,18 +103,58 @@ export class FitObjective implements NormalProblem {
   }
 
   value(angles: Float64Array): number {
-    this.evolve(angles);
+    if (this.sweep) {
+      this.turn(angles);
+      if (this.direct) return kernels.gapOf(this.sweep, this.turns, this.direct);
+      kernels.evolveInto(this.x, this.sweep, this.turns);
+    } else this.evolve(angles);
     return this.measure();
   }
 
+  /** Cosines and sines of the half angles, for the kernels. */
+  private turn(angles: Float64Array): void {
+    for (let k = 0; k < this.size; k++) {
+      const t = angles[k]! / 2;
+      this.turns[2 * k] = Math.cos(t);
+      this.turns[2 * k + 1] = Math.sin(t);
+    }
+  }
+
   linearise(angles: Float64Array, normal: Float64Array, gradient: Float64Array): number {
-    const value = this.valueAndGradient(angles, gradient);
+    if (this.sweep && this.direct) {
+      this.turn(angles);
+      const { sweep, turns, direct } = this;
+      const found = kernels.lineariseInto(normal, gradient, sweep, turns, direct);
+      this.freeze(gradient, normal);
+      return found;
+    }
+    const value = this.differentiate(angles, gradient);
     kernels.gramInto(normal, this.rows, this.size, this.residual.length);
     return value;
   }
 
-  /** F and its gradient; leaves the Jacobian behind in `rows`. */
+  /** Clears the entries of frozen angles. */
+  private freeze(gradient: Float64Array, normal?: Float64Array): void {
+    const { frozen, size } = this;
+    if (!frozen) return;
+    for (let k = 0; k < size; k++) {
+      if (!frozen[k]) continue;
+      gradient[k] = 0;
+      normal?.fill(0, k * size, (k + 1) * size);
+      for (let r = k; normal && r < size; r++) normal[r * size + k] = 0;
+    }
+  }
+
   valueAndGradient(angles: Float64Array, gradient: Float64Array): number {
+    if (!this.sweep || !this.direct) return this.differentiate(angles, gradient);
+    this.turn(angles);
+    const value = kernels.slopeInto(gradient, this.sweep, this.turns, this.direct);
+    this.freeze(gradient);
+    return value;
+  }
+
+  /** F and its gradient; leaves the Jacobian behind in `rows`. */
+  private differentiate(angles: Float64Array, gradient: Float64Array): number {
     const value = this.value(angles);
     const width = this.residual.length;
     // the residual is of V itself; the P' need V step by step
@@ -325,6 +379,23 @@ function compile(template: Template): Compiled[] {
   });
 }
 
+/** The steps as the kernels take them, or undefined when one has a matrix that changes. */
+function sweepOf(steps: readonly Compiled[], d: number, angles: number): Sweep | undefined {
+  const matrices: number[] = [];
+  const flat: number[] = [];
+  for (const step of steps) {
+    if (step.kind === 'free') return undefined;
+    if (step.kind === 'rotation') flat.push(step.axis, step.stride, 0, step.angle);
+    else if (step.swap) flat.push(3, step.first, step.second, 0);
+    else {
+      flat.push(4, step.first, step.second, matrices.length / 32);
+      matrices.push(...step.matrix);
+    }
+  }
+  const table = Float64Array.from(matrices);
+  return { d, angles, steps: Int32Array.from(flat), matrices: table };
+}
+
 /** cos and sin of -phi, phi = the phase of Tr(u^dag v). */
 function phaseOf(u: Float64Array, v: Float64Array): [number, number] {
   const half = u.length / 2;
@@ -404,91 +475,6 @@ function projectRows(
         // <y+| = (<0| - i <1|)/sqrt2
         out[o] = h * (x[p]! + x[im + q]!);
         out[half + o] = h * (x[im + p]! - x[q]!);
-      }
-    }
-  }
-}
-
-function rotateRows(
-  w: Float64Array,
-  d: number,
-  stride: number,
-  axis: 0 | 1 | 2,
-  c: number,
-  s: number,
-): void {
-  const im = d * d;
-  const run = stride * d;
-  for (let block = 0; block < im; block += 2 * run) {
-    for (let p = block; p < block + run; p++) {
-      const q = p + run;
-      const a = w[p]!;
-      const b = w[im + p]!;
-      const e = w[q]!;
-      const f = w[im + q]!;
-      if (axis === 0) {
-        w[p] = c * a + s * f;
-        w[im + p] = c * b - s * e;
-        w[q] = c * e + s * b;
-        w[im + q] = c * f - s * a;
-      } else if (axis === 1) {
-        w[p] = c * a - s * e;
-        w[im + p] = c * b - s * f;
-        w[q] = c * e + s * a;
-        w[im + q] = c * f + s * b;
-      } else {
-        w[p] = c * a + s * b;
-        w[im + p] = c * b - s * a;
-        w[q] = c * e - s * f;
-        w[im + q] = c * f + s * e;
-      }
-    }
-  }
-}
-
-function swapControlled(w: Float64Array, d: number, control: number, target: number): void {
-  const im = d * d;
-  for (let row = 0; row < d; row++) {
-    if ((row & control) === 0 || (row & target) !== 0) continue;
-    for (const base of [row * d, im + row * d]) {
-      const other = base + target * d;
-      for (let k = 0; k < d; k++) {
-        const t = w[base + k]!;
-        w[base + k] = w[other + k]!;
-        w[other + k] = t;
-      }
-    }
-  }
-}
-
-function applyPair(
-  w: Float64Array,
-  d: number,
-  m: Float64Array,
-  first: number,
-  second: number,
-): void {
-  const im = d * d;
-  const at = [0, second * d, first * d, (first + second) * d];
-  const re = [0, 0, 0, 0];
-  const imag = [0, 0, 0, 0];
-  for (let row = 0; row < d; row++) {
-    if ((row & (first | second)) !== 0) continue;
-    for (let k = row * d; k < row * d + d; k++) {
-      for (let r = 0; r < 4; r++) {
-        re[r] = w[k + at[r]!]!;
-        imag[r] = w[im + k + at[r]!]!;
-      }
-      for (let r = 0; r < 4; r++) {
-        let [x, y] = [0, 0];
-        for (let s = 0; s < 4; s++) {
-          const mr = m[4 * r + s]!;
-          const mi = m[16 + 4 * r + s]!;
-          x += mr * re[s]! - mi * imag[s]!;
-          y += mr * imag[s]! + mi * re[s]!;
-        }
-        w[k + at[r]!] = x;
-        w[im + k + at[r]!] = y;
       }
     }
   }

@@ -9,6 +9,7 @@
  */
 import { KERNEL_MODULE } from './module.generated.ts';
 import { type Kernels, plainKernels } from './plain.ts';
+import type { Sweep } from './plain-sweep.ts';
 
 type Exports = {
   memory: { buffer: ArrayBuffer; grow(pages: number): number };
@@ -16,7 +17,24 @@ type Exports = {
   multiply(out: number, a: number, b: number, m: number, k: number, n: number): void;
   square(out: number, b: number, rows: number, d: number): void;
   cholesky(l: number, a: number, shift: number, p: number, line: number): number;
+  solve(b: number, l: number, p: number, line: number): void;
+  evolve(x: number, d: number, ...chain: ChainPlaces): void;
+  gap(w: number, x: number, target: number, phase: number, d: number): number;
+  slope(gradient: number, work: number, d: number, ...rest: [...ChainPlaces, number]): number;
+  linearise(
+    normal: number,
+    gradient: number,
+    rows: number,
+    work: number,
+    d: number,
+    p: number,
+    line: number,
+    ...rest: [...ChainPlaces, number]
+  ): number;
 };
+
+/** Steps, their number, matrices, turns. */
+type ChainPlaces = [number, number, number, number];
 
 /** The part of WebAssembly used here; it is a global of every engine, not of the language. */
 type Engine = {
@@ -89,7 +107,7 @@ function wrap(wasm: Exports): Kernels {
   };
   return {
     gramInto(out, j, p, m) {
-      const line = m + (m % 2);
+      const line = 4 * Math.ceil(m / 4);
       const [o, a] = places(p * p, p * line) as [number, number];
       put(a, j, p, m, line);
       wasm.gram(8 * o, 8 * a, p, line);
@@ -122,6 +140,85 @@ function wrap(wasm: Exports): Kernels {
       if (wasm.cholesky(8 * o, 8 * q, 8 * s, p, line) === 0) return false;
       takeTriangle(l, o, p, line);
       return true;
+    },
+    solveInto(b, a, shift, p) {
+      const line = p + (p % 2);
+      const [o, q, s] = places(line * line, p * line, line) as [number, number, number];
+      put(q, a, p, p, line);
+      view.set(shift, s);
+      if (wasm.cholesky(8 * o, 8 * q, 8 * s, p, line) === 0) return false;
+      view.set(b, s);
+      wasm.solve(8 * s, 8 * o, p, line);
+      b.set(view.subarray(s, s + p));
+      return true;
+    },
+    ...sweeps(wasm, places, () => view),
+  };
+}
+
+/** Spare doubles in the working memory of a sweep: its phase. */
+const PHASE = 2;
+
+function sweeps(
+  wasm: Exports,
+  places: (...sizes: number[]) => number[],
+  memory: () => Float64Array,
+): Pick<Kernels, 'evolveInto' | 'gapOf' | 'slopeInto' | 'lineariseInto'> {
+  /** Copies a chain in; its arguments, and the places of blocks of these many doubles after it. */
+  const load = (
+    { steps, matrices }: Sweep,
+    turns: Float64Array,
+    ...sizes: number[]
+  ): { chain: ChainPlaces; free: number[] } => {
+    const held = steps.length / 2;
+    const all = places(held, matrices.length, turns.length, ...sizes);
+    const [s, m, t] = all as [number, number, number];
+    const view = memory();
+    new Int32Array(view.buffer, 8 * s, steps.length).set(steps);
+    view.set(matrices, m);
+    view.set(turns, t);
+    return { chain: [8 * s, steps.length / 4, 8 * m, 8 * t], free: all.slice(3) };
+  };
+  return {
+    evolveInto(x, sweep, turns) {
+      const size = 2 * sweep.d ** 2;
+      const { chain, free } = load(sweep, turns, size);
+      const [at] = free as [number];
+      wasm.evolve(8 * at, sweep.d, ...chain);
+      x.set(memory().subarray(at, at + size));
+      return x;
+    },
+    gapOf(sweep, turns, target) {
+      const size = 2 * sweep.d ** 2;
+      const { chain, free } = load(sweep, turns, size, size, size, PHASE);
+      const [x, w, u, phase] = free as [number, number, number, number];
+      memory().set(target, u);
+      wasm.evolve(8 * x, sweep.d, ...chain);
+      return wasm.gap(8 * w, 8 * x, 8 * u, 8 * phase, sweep.d);
+    },
+    slopeInto(gradient, sweep, turns, target) {
+      const { d, angles } = sweep;
+      const { chain, free } = load(sweep, turns, 2 * d * d, angles, 7 * d * d + PHASE);
+      const [u, g, work] = free as [number, number, number];
+      memory().set(target, u);
+      const value = wasm.slope(8 * g, 8 * work, d, ...chain, 8 * u);
+      gradient.set(memory().subarray(g, g + angles));
+      return value;
+    },
+    lineariseInto(normal, gradient, sweep, turns, target) {
+      const { d, angles: p } = sweep;
+      const size = d * d;
+      const sizes = [2 * size, p, 7 * size + PHASE, p * p, p * size];
+      const { chain, free } = load(sweep, turns, ...sizes);
+      const [u, g, work, n, rows] = free as [number, number, number, number, number];
+      const view = memory();
+      view.set(target, u);
+      const addresses = [n, g, rows, work].map((place) => 8 * place);
+      const [toN, toG, toRows, toWork] = addresses as [number, number, number, number];
+      const value = wasm.linearise(toN, toG, toRows, toWork, d, p, size, ...chain, 8 * u);
+      gradient.set(view.subarray(g, g + p));
+      normal.set(view.subarray(n, n + p * p));
+      return value;
     },
   };
 }

@@ -6,6 +6,8 @@
  * vector of two lanes does, so both twins return the same bytes.
  * Cost: gram p^2 m / 2, multiply 4 m k n, square 2 d^2 rows, cholesky p^3 / 6 multiply-adds.
  */
+import { evolveInto, gapOf, jacobianInto, type Sweep, slopeInto } from './plain-sweep.ts';
+
 export type Kernels = {
   /** Lower triangle of out = j j^T for the real p x m matrix j. */
   gramInto(out: Float64Array, j: Float64Array, p: number, m: number): void;
@@ -22,6 +24,27 @@ export type Kernels = {
   squareInto(out: Float64Array, b: Float64Array, rows: number, d: number): void;
   /** Lower Cholesky factor l of a + diag(shift); false when that is not positive definite. */
   choleskyInto(l: Float64Array, a: Float64Array, shift: Float64Array, p: number): boolean;
+  /** x with (a + diag(shift)) x = b, overwriting b; false as for `choleskyInto`, with b as it was. */
+  solveInto(b: Float64Array, a: Float64Array, shift: Float64Array, p: number): boolean;
+  /** x = the product of the steps. */
+  evolveInto(x: Float64Array, sweep: Sweep, turns: Float64Array): Float64Array;
+  /** |target - e^{-i phi} V|^2 / 2, V the product of the steps. */
+  gapOf(sweep: Sweep, turns: Float64Array, target: Float64Array): number;
+  /** The same, with its gradient. */
+  slopeInto(
+    gradient: Float64Array,
+    sweep: Sweep,
+    turns: Float64Array,
+    target: Float64Array,
+  ): number;
+  /** The same, with gradient and lower triangle of the Gauss-Newton matrix. */
+  lineariseInto(
+    normal: Float64Array,
+    gradient: Float64Array,
+    sweep: Sweep,
+    turns: Float64Array,
+    target: Float64Array,
+  ): number;
 };
 
 export const plainKernels: Kernels = Object.freeze({
@@ -29,7 +52,47 @@ export const plainKernels: Kernels = Object.freeze({
   multiplyInto,
   squareInto,
   choleskyInto,
+  solveInto,
+  evolveInto,
+  gapOf,
+  slopeInto,
+  lineariseInto,
 });
+
+function lineariseInto(
+  normal: Float64Array,
+  gradient: Float64Array,
+  sweep: Sweep,
+  turns: Float64Array,
+  target: Float64Array,
+): number {
+  const width = sweep.d * sweep.d;
+  const rows = new Float64Array(sweep.angles * width);
+  const value = jacobianInto(rows, gradient, sweep, turns, target);
+  gramInto(normal, rows, sweep.angles, width);
+  return value;
+}
+
+function solveInto(b: Float64Array, a: Float64Array, shift: Float64Array, p: number): boolean {
+  const l = new Float64Array(p * p);
+  if (!choleskyInto(l, a, shift, p)) return false;
+  for (let r = 0; r < p; r++) {
+    let [x, xOdd] = [0, 0];
+    for (let k = 0; k + 1 < r; k += 2) {
+      x += l[r * p + k]! * b[k]!;
+      xOdd += l[r * p + k + 1]! * b[k + 1]!;
+    }
+    let rest = b[r]! - (x + xOdd);
+    if (r % 2 === 1) rest -= l[r * p + r - 1]! * b[r - 1]!;
+    b[r] = rest / l[r * p + r]!;
+  }
+  for (let r = p - 1; r >= 0; r--) {
+    const value = b[r]! / l[r * p + r]!;
+    b[r] = value;
+    for (let k = 0; k < r; k++) b[k]! -= value * l[r * p + k]!;
+  }
+  return true;
+}
 
 function gramInto(out: Float64Array, j: Float64Array, p: number, m: number): void {
   for (let r = 0; r < p; r += 2) {
