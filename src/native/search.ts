@@ -207,7 +207,7 @@ export class Search {
   }
 
   private async shortened(found: Placement): Promise<Placement> {
-    const best = await shorten(found, this.fitting);
+    const best = await shorten(found, { ...this.fitting, links: this.options.links });
     this.note([best]);
     return best;
   }

@@ -5,7 +5,8 @@
  * neighbouring gates on the same pair of wires are joined where the pair as a whole needs fewer entanglers than they
  * do one by one; (3) every two-wire gate becomes uses of the entangler with single-wire gates around them (`two-wire.ts`);
  * (4) runs of single-wire gates on a wire are multiplied together and written once, as short as the set allows
- * (`euler.ts`). A native entangler stays where it is.
+ * (`euler.ts`), rotations that pass an entangler where that saves gates (`single-runs.ts`). A native entangler stays where
+ * it is.
  * Measurements, resets, barriers, conditions and annotations keep their places: single-wire gates before them are written
  * before them. A conditioned gate becomes conditioned native gates. A frame change right before an unconditional
  * measurement or reset does nothing and is left out.
@@ -18,12 +19,14 @@ import {
   type Operation,
   operationWires,
 } from '../circuit/circuit.ts';
+import { PAULI } from '../circuit/gates.ts';
 import { gateMatrix } from '../circuit/unitary.ts';
 import { InputError } from '../input-error.ts';
-import { identity, kron, mul } from '../numeric/complex-matrix.ts';
+import { adjoint, identity, kron, mul } from '../numeric/complex-matrix.ts';
+import { entanglerMatrix } from '../reshape/template.ts';
 import { decompose } from './decompose.ts';
-import { eulerAngles, type OneWireSet, oneWireGates } from './euler.ts';
 import type { NativeSet } from './native-set.ts';
+import { type Axis, type Run, writeRuns } from './single-runs.ts';
 import { type EntanglerUse, entanglerUse, twoWireGates, usesNeeded } from './two-wire.ts';
 
 export function toNative(
@@ -158,19 +161,40 @@ function swapped(matrix: Float64Array): Float64Array {
   return out;
 }
 
-/** Writes operations in order and holds single-wire gates back until something else needs their wire. */
+/** Axes of rotations that pass an entangler on its first and second wire, with the sign they have after it. */
+type Passing = ({ axis: Axis; sign: 1 | -1 } | null)[];
+
+function passingOf(set: NativeSet): Passing {
+  const { entangler } = set;
+  const e = entanglerMatrix(entangler, 0.7);
+  return [0, 1].map((side) => {
+    for (const axis of ['z', 'x', 'y'] as const) {
+      const p = PAULI[axis.toUpperCase() as 'X' | 'Y' | 'Z'];
+      const wide = side === 0 ? kron(p, PAULI.I, 2, 2) : kron(PAULI.I, p, 2, 2);
+      // e p e^dag = +-p
+      const moved = mul(e, mul(wide, adjoint(e, 4), 4), 4);
+      const overlap = wide.reduce((sum, x, k) => sum + x * moved[k]!, 0) / 4;
+      if (Math.abs(Math.abs(overlap) - 1) < 1e-12) return { axis, sign: overlap > 0 ? 1 : -1 };
+    }
+    return null;
+  });
+}
+
+/** Writes operations in order; single-wire gates are gathered in runs and written last, all of a wire together. */
 class NativeWriter {
-  private readonly out: Operation[] = [];
+  private readonly out: (Operation | { wire: number; run: number })[] = [];
   private readonly pending: (Float64Array | undefined)[];
+  private readonly runs: Run[][];
   private readonly set: NativeSet;
   private readonly use: EntanglerUse;
-  private readonly oneWire: OneWireSet;
+  private readonly passing: Passing;
 
   constructor(wires: number, set: NativeSet, use: EntanglerUse) {
     this.pending = new Array(wires).fill(undefined);
+    this.runs = Array.from({ length: wires }, () => []);
     this.set = set;
     this.use = use;
-    this.oneWire = set.oneWire;
+    this.passing = passingOf(set);
   }
 
   add(operation: Operation): void {
@@ -178,13 +202,13 @@ class NativeWriter {
       const isEnd = operation.kind === 'measure' || operation.kind === 'reset';
       const isFree = isEnd && !operation.condition;
       const touched = operation.kind === 'barrier' ? operation.wires : operationWires(operation);
-      for (const wire of touched) this.flush(wire, isFree ? operation.kind : undefined);
+      for (const wire of touched) this.flush(wire, { kind: isFree ? operation.kind : 'hard' });
       this.out.push(operation);
       return;
     }
     const carries = operation.condition !== undefined || operation.annotations !== undefined;
     if (carries) {
-      for (const wire of operation.wires) this.flush(wire);
+      for (const wire of operation.wires) this.flush(wire, { kind: 'hard' });
       this.addCarrying(operation);
       return;
     }
@@ -195,7 +219,10 @@ class NativeWriter {
     for (const piece of this.piecesOf(operation)) {
       if (piece.wires.length === 1) this.multiply(piece.wires[0]!, gateMatrix(piece));
       else {
-        for (const wire of piece.wires) this.flush(wire);
+        piece.wires.forEach((wire, side) => {
+          const passing = this.passing[side];
+          this.flush(wire, passing ? { kind: 'pass', ...passing } : { kind: 'hard' });
+        });
         this.out.push(piece);
       }
     }
@@ -239,37 +266,21 @@ class NativeWriter {
     this.pending[wire] = before ? mul(matrix, before, 2) : matrix;
   }
 
-  private flush(wire: number, end?: 'measure' | 'reset'): void {
-    const matrix = this.pending[wire];
+  /** Ends the run of a wire; its gates will stand here. */
+  private flush(wire: number, end: Run['end']): void {
+    const matrix = this.pending[wire] ?? null;
     this.pending[wire] = undefined;
-    if (!matrix || end === 'reset') return;
-    const gates =
-      end === 'measure'
-        ? beforeMeasurement(matrix, this.oneWire)
-        : oneWireGates(matrix, this.oneWire);
-    for (const { name, angles } of gates) this.out.push(gate(name, [wire], ...angles));
+    this.out.push({ wire, run: this.runs[wire]!.length });
+    this.runs[wire]!.push({ matrix, end });
   }
 
   finish(): Operation[] {
-    for (let wire = 0; wire < this.pending.length; wire++) this.flush(wire);
-    return this.out;
+    for (let wire = 0; wire < this.pending.length; wire++) this.flush(wire, { kind: 'hard' });
+    const written = this.runs.map((runs) => writeRuns(runs, this.set.oneWire));
+    return this.out.flatMap((entry): Operation[] =>
+      'run' in entry
+        ? written[entry.wire]![entry.run]!.map(({ name, angles }) => gate(name, [entry.wire], ...angles)) // biome-ignore format: one call
+        : [entry],
+    );
   }
-}
-
-/** A measurement in Z does not see the last rotation about Z: u -> Rz(-f) u. */
-function beforeMeasurement(u: Float64Array, set: OneWireSet): ReturnType<typeof oneWireGates> {
-  const { f } = eulerAngles(u);
-  const turned = u.slice();
-  // f is undone up to what makes the set's own last rotation vanish
-  const last = set === 'rz,sx' || set === 'rz,sx,x' ? f + Math.PI : f;
-  const candidates = [f, last, f + Math.PI / 2].map((angle) => {
-    const [c, s] = [Math.cos(angle / 2), Math.sin(angle / 2)];
-    for (let k = 0; k < 4; k++) {
-      const sign = k < 2 ? 1 : -1;
-      turned[k] = c * u[k]! - sign * s * u[4 + k]!;
-      turned[4 + k] = c * u[4 + k]! + sign * s * u[k]!;
-    }
-    return oneWireGates(turned, set);
-  });
-  return candidates.reduce((best, gates) => (gates.length < best.length ? gates : best));
 }

@@ -92,6 +92,10 @@ const EXHAUSTIVE_STARTS_MAX = 6;
 /** Most of these fits lead nowhere: one that gains less than 5 % in this many iterations is given up. */
 const EXHAUSTIVE_STALL_ITERATIONS = 20;
 
+/** Moves are tried in placements with at most this many entanglers, and at most so many. */
+const MOVES_COUNT_MAX = 14;
+const MOVES_MAX = 600;
+
 export type Descent = {
   best: Placement;
   /** Every placement of fewer was tried, up to the symmetries of the target. */
@@ -147,34 +151,82 @@ export async function descend(found: Placement, settings: BeamSettings): Promise
 /**
  * Takes entanglers out one by one, as long as the rest can still be fitted: from the angles that are left, and from a random
  * start. More entanglers than needed make fits easy (Larocca et al., arXiv:2109.11676), so this goes down from a placement
- * that is known to do.
+ * that is known to do. Where none can simply go, placements with one out and another one moved to a different link or
+ * place are tried, up to `MOVES_MAX` of them.
  */
-export async function shorten(found: Placement, settings: FitSettings): Promise<Placement> {
-  const { templateOf, tolerance, control, label } = settings;
+export async function shorten(
+  found: Placement,
+  settings: FitSettings & { links?: readonly Pair[] },
+): Promise<Placement> {
+  const { tolerance, control, label, links } = settings;
   let best = found;
   // removals go round the circuit, so that one place is not tried again and again
   let from = 0;
   while (best.pairs.length > 0 && !control.stopped()) {
-    const { pairs, angles } = best;
-    const count = pairs.length;
+    const count = best.pairs.length;
     control.report({ stage: `taking one of ${count} entanglers out of ${label}` });
-    const list = Array.from({ length: count }, (_, k) => (from + k) % count).flatMap((k) => {
-      const shorter = [...pairs.slice(0, k), ...pairs.slice(k + 1)];
-      const size = (list: readonly Pair[]): number => angleCount(templateOf(list));
-      const [start, end] = [size(pairs.slice(0, k)), size(pairs.slice(0, k + 1))];
-      const left = Float64Array.from([...angles.subarray(0, start), ...angles.subarray(end)]);
-      return [
-        { pairs: shorter, start: left },
-        { pairs: shorter, start: null },
-      ];
-    });
+    const list = removals(best, from, settings);
     const [nearest] = await fitPlacements(list, { ...settings, label: `${label}, shorter` });
-    if (!nearest || nearest.distance > tolerance) break;
-    const removed = list.findIndex(({ pairs: shorter }) => shorter === nearest.pairs);
-    from = Math.floor(removed / 2) + from;
-    best = nearest;
+    if (nearest && nearest.distance <= tolerance) {
+      const removed = list.findIndex(({ pairs: shorter }) => shorter === nearest.pairs);
+      from = Math.floor(removed / 2) + from;
+      best = nearest;
+      continue;
+    }
+    if (!links || count > MOVES_COUNT_MAX) break;
+    control.report({ stage: `moving one of ${count} entanglers of ${label}` });
+    const moves = moved(best.pairs, links).map((pairs) => ({ pairs, start: null }));
+    const stallIterations = EXHAUSTIVE_STALL_ITERATIONS;
+    const [other] = await fitPlacements(moves, { ...settings, label: `${label}, moved`, stallIterations }); // biome-ignore format: one call
+    if (!other || other.distance > tolerance) break;
+    best = other;
+    from = 0;
   }
   return best;
+}
+
+/** One out, from the angles that are left and from a random start, beginning with pair `from`. */
+function removals(
+  { pairs, angles }: Placement,
+  from: number,
+  { templateOf }: FitSettings,
+): { pairs: readonly Pair[]; start: Float64Array | null }[] {
+  const count = pairs.length;
+  return Array.from({ length: count }, (_, k) => (from + k) % count).flatMap((k) => {
+    const shorter = [...pairs.slice(0, k), ...pairs.slice(k + 1)];
+    const size = (list: readonly Pair[]): number => angleCount(templateOf(list));
+    const [start, end] = [size(pairs.slice(0, k)), size(pairs.slice(0, k + 1))];
+    const left = Float64Array.from([...angles.subarray(0, start), ...angles.subarray(end)]);
+    return [
+      { pairs: shorter, start: left },
+      { pairs: shorter, start: null },
+    ];
+  });
+}
+
+/** One out and another one on a different link or elsewhere; one of each key, evenly thinned out to `MOVES_MAX`. */
+function moved(pairs: readonly Pair[], links: readonly Pair[]): (readonly Pair[])[] {
+  const seen = new Map<string, readonly Pair[]>();
+  for (let out = 0; out < pairs.length; out++) {
+    const shorter = [...pairs.slice(0, out), ...pairs.slice(out + 1)];
+    seen.set(placementKey(shorter), shorter);
+  }
+  const plain = seen.size;
+  for (const shorter of [...seen.values()]) {
+    for (let k = 0; k < shorter.length; k++) {
+      const rest = [...shorter.slice(0, k), ...shorter.slice(k + 1)];
+      for (let place = 0; place <= rest.length; place++) {
+        for (const link of links) {
+          const other = [...rest.slice(0, place), link, ...rest.slice(place)];
+          const key = placementKey(other);
+          if (!seen.has(key) && !isWasteful(other)) seen.set(key, other);
+        }
+      }
+    }
+  }
+  const list = [...seen.values()].slice(plain);
+  const step = Math.max(1, list.length / MOVES_MAX);
+  return Array.from({ length: Math.min(list.length, MOVES_MAX) }, (_, k) => list[Math.floor(k * step)]!); // biome-ignore format: one list
 }
 
 /**
