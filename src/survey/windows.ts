@@ -3,8 +3,8 @@
  *
  * Taking a window as one gate of which only the influence counts can only loosen the relation between
  * carriers, so compatible windows (no common gate, no cycle between them) are taken greedily, in several
- * orders of preference; then windows left out are tried in place of those in their way; the windows without
- * which the width stays the same are given back, the longest first.
+ * orders of preference, first by how many pairs of the whole each of them unties alone; then windows left out are tried in
+ * place of those in their way; the windows without which the width stays the same are given back, the longest first.
  * Cost: linear in windows times nodes, and one width plan for each window taken.
  */
 import { contracted } from './contracted.ts';
@@ -34,7 +34,9 @@ export type WindowOptions = WindowSearchOptions & {
 export const WINDOW_RULES: OrderRules = { commute: true, early: true };
 const EFFORT = 5;
 const EXCHANGES_MAX = 60;
-/** Preferences: by gain, by few carriers, by short length, by gain for each gate. */
+/** How many windows are tried alone, times the nodes of the circuit. */
+const ALONE_WORK_MAX = 2e6;
+/** Preferences: by gain, by few carriers, by gain for each gate. */
 const PREFERENCES: readonly ((a: WindowCandidate, b: WindowCandidate) => number)[] = [
   (a, b) => b.gain - a.gain || a.nodes.length - b.nodes.length,
   (a, b) => a.carriers.length - b.carriers.length || b.gain - a.gain,
@@ -57,7 +59,10 @@ export function chooseWindows(
   let best: WindowCandidate[] = [];
   let bestPlan = structural;
   let bestRelation = structure.relation;
-  for (const preference of PREFERENCES) {
+  const untied = untiedAlone(candidates, circuit.nodes.length, structure.relation, relationWith, stopped); // biome-ignore format: one call
+  const byUntied = (a: WindowCandidate, b: WindowCandidate): number =>
+    (untied.get(b) ?? 0) - (untied.get(a) ?? 0) || a.nodes.length - b.nodes.length;
+  for (const preference of [byUntied, ...PREFERENCES]) {
     if (stopped() || candidates.length === 0) break;
     const sorted = candidates
       .map((candidate, k) => ({ candidate, k }))
@@ -75,15 +80,17 @@ export function chooseWindows(
   }
   // put in one that was left out, and leave out those that are in its way
   const left = candidates.map((candidate, k) => ({ candidate, k }));
-  left.sort((a, b) => PREFERENCES[2]!(a.candidate, b.candidate) || a.k - b.k);
+  left.sort((a, b) => byUntied(a.candidate, b.candidate) || a.k - b.k);
   for (const { candidate } of left.slice(0, EXCHANGES_MAX)) {
     if (stopped()) break;
     if (best.includes(candidate)) continue;
     const chosen = compatible(circuit, [candidate, ...best]);
     const relation = relationWith(chosen);
-    if (tiesOf(relation) > tiesOf(bestRelation)) continue;
+    const [now, ties] = [tiesOf(bestRelation), tiesOf(relation)];
+    if (ties > now) continue;
     const width = planWidth(relation, { effort });
-    if (width.width < bestPlan.width) [best, bestPlan, bestRelation] = [chosen, width, relation];
+    const isBetter = width.width < bestPlan.width || (width.width === bestPlan.width && ties < now);
+    if (isBetter) [best, bestPlan, bestRelation] = [chosen, width, relation];
   }
   // give back what is not needed
   for (const candidate of [...best].sort((a, b) => b.nodes.length - a.nodes.length)) {
@@ -99,6 +106,23 @@ export function chooseWindows(
     width: bestPlan,
     candidates: candidates.length,
   };
+}
+
+/** For each window, how many pairs of the whole circuit it unties when it is the only one. */
+function untiedAlone(
+  candidates: readonly WindowCandidate[],
+  nodes: number,
+  relation: Relation,
+  relationWith: (chosen: readonly WindowCandidate[]) => Relation,
+  stopped: () => boolean,
+): Map<WindowCandidate, number> {
+  const found = new Map<WindowCandidate, number>();
+  const all = tiesOf(relation);
+  for (const candidate of candidates.slice(0, Math.ceil(ALONE_WORK_MAX / nodes))) {
+    if (stopped()) break;
+    found.set(candidate, all - tiesOf(relationWith([candidate])));
+  }
+  return found;
 }
 
 /** How many pairs of carriers a relation ties. */
