@@ -48,10 +48,10 @@ function inverseHessian(p: number): Direction {
       multiplyInto(hy, h, change, p);
       const weight = (1 + dot(change, hy) / sy) / sy;
       for (let r = 0; r < p; r++) {
-        const [sr, hr] = [step[r]!, hy[r]! / sy];
-        for (let c = 0; c < p; c++) {
-          h[r * p + c]! += weight * sr * step[c]! - hr * step[c]! - (sr * hy[c]!) / sy;
-        }
+        const ofY = step[r]! / sy;
+        const ofS = weight * step[r]! - hy[r]! / sy;
+        const row = r * p;
+        for (let c = 0; c < p; c++) h[row + c]! += ofS * step[c]! - ofY * hy[c]!;
       }
     },
     forget() {
@@ -60,10 +60,19 @@ function inverseHessian(p: number): Direction {
   };
 }
 
+/** out = h v, with four sums apart so that they do not wait for each other. */
 function multiplyInto(out: Float64Array, h: Float64Array, v: Float64Array, p: number): void {
+  const end = p - (p % 4);
   for (let r = 0; r < p; r++) {
-    let sum = 0;
-    for (let c = 0; c < p; c++) sum += h[r * p + c]! * v[c]!;
-    out[r] = sum;
+    const row = r * p;
+    let [a, b, c, d] = [0, 0, 0, 0];
+    for (let k = 0; k < end; k += 4) {
+      a += h[row + k]! * v[k]!;
+      b += h[row + k + 1]! * v[k + 1]!;
+      c += h[row + k + 2]! * v[k + 2]!;
+      d += h[row + k + 3]! * v[k + 3]!;
+    }
+    for (let k = end; k < p; k++) a += h[row + k]! * v[k]!;
+    out[r] = a + b + (c + d);
   }
 }

@@ -6,8 +6,9 @@
  * ratio of the actual to the predicted decrease: Levenberg, Q. Appl. Math. 2, 164 (1944); Marquardt, J. SIAM 11, 431
  * (1963); the update rule is H. B. Nielsen, Damping parameter in Marquardt's method, IMM-REP-1999-05 (1999), eq. 2.21.
  * Changed: directions that J does not see (rank-deficient N) are held by a floor under D, so the step is finite and
- * short there. After `goal` is reached the loop goes on while a step still gains a factor of two, which takes the
- * value down to rounding.
+ * short there. The damping falls tenfold where the model is good, and with a power of F near a zero, as in J. Fan,
+ * Y. Yuan, Computing 74, 23 (2005), which makes the last steps quadratic. After `goal` is reached the loop goes on
+ * while a step still gains a factor of two, which takes the value down to rounding.
  * Cost: one linearisation and p^3/3 flops per iteration.
  * Fails: never; the status says why it stopped, and x is the best point seen.
  */
@@ -25,6 +26,8 @@ export type NormalProblem = {
 
 export type LevenbergMarquardtOptions = {
   goal: number;
+  /** Rounding of the value: at or below it no further step can gain. */
+  floor?: number;
   iterationsMax: number;
   /** First damping, relative to the largest diagonal entry. */
   dampingStart?: number;
@@ -36,6 +39,12 @@ export type LevenbergMarquardtOptions = {
 };
 
 const DAMPING_START = 1e-2;
+/** At most this share of the damping goes in one accepted step; a refused step multiplies it by `GROWTH` at first. */
+const SHRINK = 0.1;
+const GROWTH = 3;
+/** Where the residual vanishes the damping does too: at most (F / largest diagonal entry) to this power. */
+const DAMPING_POWER = 0.75;
+const DAMPING_MIN = 1e-15;
 const STALL_SHARE = 0.05;
 const STALL_ITERATIONS = 40;
 const POLISH_ITERATIONS_MAX = 8;
@@ -47,6 +56,7 @@ export function* levenbergMarquardt(
   options: LevenbergMarquardtOptions,
 ): Generator<void, OptimiserResult> {
   const { goal, iterationsMax, control, onIteration } = options;
+  const floor = Math.min(goal, options.floor ?? 0);
   const p = problem.size;
   const x = start.slice();
   const trial = new Float64Array(p);
@@ -58,7 +68,7 @@ export function* levenbergMarquardt(
   let value = problem.linearise(x, normal, gradient);
   let evaluations = 1;
   let damping = 0;
-  let growth = 2;
+  let growth = GROWTH;
   let polish = 0;
   let status: Status = 'iteration-limit';
   const history: number[] = [value];
@@ -89,9 +99,9 @@ export function* levenbergMarquardt(
         evaluations++;
         const ratio = (value - next) / predicted;
         if (Number.isFinite(next) && next < value) {
-          damping *= Math.max(1 / 3, 1 - (2 * Math.min(ratio, 1) - 1) ** 3);
-          damping = Math.max(damping, 1e-15);
-          growth = 2;
+          damping *= Math.max(SHRINK, 1 - (2 * Math.min(ratio, 1) - 1) ** 3);
+          damping = Math.max(Math.min(damping, (next / top) ** DAMPING_POWER), DAMPING_MIN);
+          growth = GROWTH;
           isAccepted = true;
           before = value;
           value = next;
@@ -108,7 +118,7 @@ export function* levenbergMarquardt(
       break;
     }
     onIteration?.(iteration + 1, value, x);
-    if (value <= goal && value > before / 2) {
+    if (value <= floor || (value <= goal && value > before / 2)) {
       status = 'converged';
       iteration++;
       break;

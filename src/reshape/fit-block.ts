@@ -48,6 +48,9 @@ export type FitResult = {
   evaluations: number;
 };
 
+/** D of a fit that is exact up to rounding. */
+const DISTANCE_FLOOR = 1e-30;
+
 /** Iterations between two pauses. */
 const PAUSE_EVERY = 4;
 
@@ -56,6 +59,7 @@ export async function fitBlock(job: FitJob, control: Control = freeRunning): Pro
   const start = startingAngles(job, objective.size);
   const run = minimise(job, objective, start, {
     goal: objective.valueOf(job.goal),
+    floor: objective.valueOf(DISTANCE_FLOOR),
     iterationsMax: job.iterationsMax,
     ...(job.stallIterations === undefined ? {} : { stallIterations: job.stallIterations }),
     control,

@@ -134,8 +134,8 @@ function wrap(wasm: Exports): Kernels {
     },
     choleskyInto(l, a, shift, p) {
       const line = p + (p % 2);
-      const [o, q, s] = places(line * line, p * line, p) as [number, number, number];
-      put(q, a, p, p, line);
+      const [o, q, s] = places(line * line, p * p, p) as [number, number, number];
+      view.set(a, q);
       view.set(shift, s);
       if (wasm.cholesky(8 * o, 8 * q, 8 * s, p, line) === 0) return false;
       takeTriangle(l, o, p, line);
@@ -143,8 +143,8 @@ function wrap(wasm: Exports): Kernels {
     },
     solveInto(b, a, shift, p) {
       const line = p + (p % 2);
-      const [o, q, s] = places(line * line, p * line, line) as [number, number, number];
-      put(q, a, p, p, line);
+      const [o, q, s] = places(line * line, p * p, line) as [number, number, number];
+      view.set(a, q);
       view.set(shift, s);
       if (wasm.cholesky(8 * o, 8 * q, 8 * s, p, line) === 0) return false;
       view.set(b, s);

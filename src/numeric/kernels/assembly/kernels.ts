@@ -139,26 +139,28 @@ export function square(out: usize, b: usize, rows: i32, d: i32): void {
 
 /** Rows of the factor that are worked on together; even. */
 const GROUP: i32 = 24;
+const SMALL_GROUP: i32 = 4;
 
-/** Lower Cholesky factor l of a + diag(shift), p x p with `line` doubles a row (even); 0 when not positive definite. */
+/** Lower Cholesky factor l of a + diag(shift); l has `line` doubles a row (even), a has p; 0 when not positive definite. */
 export function cholesky(l: usize, a: usize, shift: usize, p: i32, line: i32): i32 {
   const row = usize(line) << 3;
-  const group = p > 4 * GROUP ? GROUP : 8;
+  const rowA = usize(p) << 3;
+  const group = p > 4 * GROUP ? GROUP : SMALL_GROUP;
   for (let from = 0; from < p; from += group) {
     const to = min(from + group, p);
     for (let s = 0; s < from; s += 2) {
       let r = from;
-      for (; r + 3 < to; r += 4) fourRows(l, a, row, r, s);
-      for (; r < to; r++) entries(l, a, row, r, s);
+      for (; r + 3 < to; r += 4) fourRows(l, a, row, rowA, r, s);
+      for (; r < to; r++) entries(l, a, row, rowA, r, s);
     }
     for (let r = from; r < to; r++) {
       const lr = l + usize(r) * row;
-      for (let s = from; s < r; s += 2) entries(l, a, row, r, s);
+      for (let s = from; s < r; s += 2) entries(l, a, row, rowA, r, s);
       let x = f64x2.splat(0);
       const end = usize(r & ~1) << 3;
       for (let k: usize = 0; k < end; k += 16) { const v = at(lr + k); x = axpy(x, v, v); }
       const here = usize(r) << 3;
-      let rest = f64.load(a + usize(r) * row + here) + f64.load(shift + here) - sum(x);
+      let rest = f64.load(a + usize(r) * rowA + here) + f64.load(shift + here) - sum(x);
       if (r & 1) { const v = f64.load(lr + end); rest -= v * v; }
       if (!(rest > 0)) return 0;
       f64.store(lr + here, Math.sqrt(rest));
@@ -168,7 +170,7 @@ export function cholesky(l: usize, a: usize, shift: usize, p: i32, line: i32): i
 }
 
 /** Columns s and s + 1 of row r, as far as they lie below the diagonal. */
-function entries(l: usize, a: usize, row: usize, r: i32, s: i32): void {
+function entries(l: usize, a: usize, row: usize, rowA: usize, r: i32, s: i32): void {
   const lr = l + usize(r) * row;
   const ls = l + usize(s) * row;
   const lt = ls + row;
@@ -179,7 +181,7 @@ function entries(l: usize, a: usize, row: usize, r: i32, s: i32): void {
     x = axpy(x, v, at(ls + k));
     y = axpy(y, v, at(lt + k));
   }
-  close(lr, a + usize(r) * row, ls, lt, end, sum(x), sum(y), s + 1 < r);
+  close(lr, a + usize(r) * rowA, ls, lt, end, sum(x), sum(y), s + 1 < r);
 }
 
 @inline
@@ -193,7 +195,7 @@ function close(lr: usize, ar: usize, ls: usize, lt: usize, end: usize, x: f64, y
 }
 
 /** Columns s and s + 1 of the rows r to r + 3, all below the diagonal. */
-function fourRows(l: usize, a: usize, row: usize, r: i32, s: i32): void {
+function fourRows(l: usize, a: usize, row: usize, rowA: usize, r: i32, s: i32): void {
   const ls = l + usize(s) * row;
   const lt = ls + row;
   const l0 = l + usize(r) * row;
@@ -208,11 +210,11 @@ function fourRows(l: usize, a: usize, row: usize, r: i32, s: i32): void {
     t = at(l2 + k); x2 = axpy(x2, t, u); y2 = axpy(y2, t, v);
     t = at(l3 + k); x3 = axpy(x3, t, u); y3 = axpy(y3, t, v);
   }
-  const a0 = a + usize(r) * row;
+  const a0 = a + usize(r) * rowA;
   close(l0, a0, ls, lt, end, sum(x0), sum(y0), true);
-  close(l1, a0 + row, ls, lt, end, sum(x1), sum(y1), true);
-  close(l2, a0 + 2 * row, ls, lt, end, sum(x2), sum(y2), true);
-  close(l3, a0 + 3 * row, ls, lt, end, sum(x3), sum(y3), true);
+  close(l1, a0 + rowA, ls, lt, end, sum(x1), sum(y1), true);
+  close(l2, a0 + 2 * rowA, ls, lt, end, sum(x2), sum(y2), true);
+  close(l3, a0 + 3 * rowA, ls, lt, end, sum(x3), sum(y3), true);
 }
 
 /** Overwrites b with the solution of l l^T x = b; l and b have `line` doubles a row (even). */
