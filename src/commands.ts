@@ -89,11 +89,12 @@ async function perform(
   const common = { ...contractPart(options), seed: options.seed ?? 1, control };
   switch (request.command) {
     case 'survey': {
-      const report = surveyCircuit(await read(request.circuit), common);
+      const circuit = withRules(await read(request.circuit), options);
+      const report = surveyCircuit(circuit, common);
       return { report, text: null, exitCode: 0 };
     }
     case 'narrow': {
-      const circuit = await read(request.circuit);
+      const circuit = withRules(await read(request.circuit), options);
       const { report, text } = await narrow(circuit, {
         ...common,
         ...(await nativePart(options, read)),
@@ -114,13 +115,16 @@ async function perform(
           map: request.options.map,
         }),
       };
-      const [original, rewritten] = [await read(request.original), await read(request.rewritten)];
+      const [original, rewritten] = [
+        withRules(await read(request.original), options),
+        await read(request.rewritten),
+      ];
       const report = compareCircuits(original, rewritten, settings);
       const exitCode = report.verdict === 'same' ? 0 : report.verdict === 'different' ? 1 : 3;
       return { report, text: null, exitCode };
     }
     case 'build': {
-      const target = await read(request.target);
+      const target = withRules(await read(request.target), options);
       const { optimiser, entanglersMax } = request.options;
       const device = options.device ? deviceOf(options.device) : undefined;
       const links = options.links ?? device?.links.map(({ between }) => between);
@@ -135,6 +139,24 @@ async function perform(
       return { report, text: writeCircuit(circuit), exitCode };
     }
   }
+}
+
+/** The circuit, if it has all the wires for which a rule was asked. */
+function withRules(circuit: Circuit, { inputOf, outputOf }: CommonOptions): Circuit {
+  for (const [what, rules] of [
+    ['input', inputOf],
+    ['output', outputOf],
+  ] as const) {
+    for (const wire of rules?.keys() ?? []) {
+      if (wire < circuit.wires) continue;
+      throw new InputError({
+        code: 'no-such-wire',
+        message: `the wire of an ${what} rule must be in [0, ${circuit.wires - 1}], got ${wire}`,
+        file: circuit.name,
+      });
+    }
+  }
+  return circuit;
 }
 
 /** Only the entries that are there: options that are not given must not be passed as undefined. */

@@ -35,7 +35,14 @@ export class InputError extends Error {
 export function formatProblem(problem: InputProblem): string {
   const { message, file, line, column, hint } = problem;
   const place = [file, line, column].filter((part) => part !== undefined).join(':');
-  return message + (place ? ` at ${place}` : '') + (hint ? ` (${hint})` : '');
+  return shortened(message) + (place ? ` at ${place}` : '') + (hint ? ` (${shortened(hint)})` : '');
+}
+
+/** A message repeats what it is about, which may be a word of any length: nobody reads more than this of it. */
+const MESSAGE_LENGTH_MAX = 1000;
+
+export function shortened(text: string): string {
+  return text.length <= MESSAGE_LENGTH_MAX ? text : `${text.slice(0, MESSAGE_LENGTH_MAX - 3)}...`;
 }
 
 /** The known word nearest to `word` by edit distance, if it is near enough to be a slip of the hand. */

@@ -15,7 +15,7 @@ import {
 import { COMPARE_TOLERANCE } from '../check/compare.ts';
 import type { CommandRequest, CommandResult, CommonOptions, Source } from '../commands.ts';
 import type { InputRule, OutputRule } from '../contract.ts';
-import { formatProblem, InputError, nearestWord } from '../input-error.ts';
+import { formatProblem, InputError, nearestWord, shortened } from '../input-error.ts';
 import { type Captioned, pictureSheet } from '../write/picture-sheet.ts';
 import { reportHtml } from '../write/report-html.ts';
 import { errorColours } from './colours.ts';
@@ -299,7 +299,7 @@ function explain(error: unknown): number {
     if (error.exitCode === 0) return 0;
     // commander prints help itself when no command is given
     if (error.code === 'commander.help') return 2;
-    process.stderr.write(`wiregauge: ${error.message.replace(/^error: /, '')}\n`);
+    process.stderr.write(`wiregauge: ${shortened(error.message.replace(/^error: /, ''))}\n`);
     return 2;
   }
   if (error instanceof InputError) {
