@@ -21,7 +21,7 @@ type Pair = {
 };
 
 /** Only these inputs and outputs matter; the others start in |0> and are dropped. */
-function only(
+function carrying(
   wires: number,
   inputs: readonly number[],
   outputs: readonly number[],
@@ -61,7 +61,7 @@ function fourier(n: number, how: 'coherent' | 'conditions'): string {
   return lines.join(' ');
 }
 
-const any = { inputs: 'any' } as const;
+const anyInput = { inputs: 'any' } as const;
 const kept = { inputs: 'any', outputs: 'kept' } as const;
 
 const PAIRS: readonly Pair[] = [
@@ -70,14 +70,14 @@ const PAIRS: readonly Pair[] = [
     source: 'Bennett et al., PRL 70, 1895 (1993); NC figure 1.13',
     first: teleport('if (c[1]) x q[2]; if (c[0]) z q[2];'),
     second: carried,
-    contract: only(3, [0], [2]),
+    contract: carrying(3, [0], [2]),
   },
   {
     claim: 'teleportation with the correction for one bit only is not',
     source: 'NC section 1.3.7',
     first: teleport('if (c[1]) x q[2];'),
     second: carried,
-    contract: only(3, [0], [2]),
+    contract: carrying(3, [0], [2]),
     verdict: 'different',
   },
   {
@@ -85,21 +85,21 @@ const PAIRS: readonly Pair[] = [
     source: 'NC section 2.4.3',
     first: teleport(''),
     second: 'qubit[3] q; bit[2] c; h q[0]; cx q[0], q[2];',
-    contract: only(3, [], [2]),
+    contract: carrying(3, [], [2]),
   },
   {
     claim: 'superdense coding carries both bits',
     source: 'Bennett, Wiesner, PRL 69, 2881 (1992); NC section 2.3',
     first: `qubit[4] q; bit[2] c; ${bell(2, 3)} cx q[1], q[2]; cz q[0], q[2]; ${bellMeasurement(2, 3, 0, 1)}`,
     second: 'qubit[4] q; bit[2] c; c[0] = measure q[0]; c[1] = measure q[1];',
-    contract: only(4, [0, 1], []),
+    contract: carrying(4, [0, 1], []),
   },
   {
     claim: 'with a separable pair it carries one bit at most',
     source: 'Holevo bound: NC theorem 12.1',
     first: `qubit[4] q; bit[2] c; h q[2]; cx q[1], q[2]; cz q[0], q[2]; ${bellMeasurement(2, 3, 0, 1)}`,
     second: 'qubit[4] q; bit[2] c; c[0] = measure q[0]; c[1] = measure q[1];',
-    contract: only(4, [0, 1], []),
+    contract: carrying(4, [0, 1], []),
     verdict: 'different',
   },
   {
@@ -108,14 +108,14 @@ const PAIRS: readonly Pair[] = [
     first: 'qubit[2] q; bit c; h q[0]; c = measure q[0]; if (c) { h q[1]; t q[1]; }',
     second:
       'qubit[2] q; bit c; h q[0]; ctrl @ h q[0], q[1]; ctrl @ t q[0], q[1]; c = measure q[0];',
-    contract: { ...only(2, [0, 1], [1]) },
+    contract: { ...carrying(2, [0, 1], [1]) },
   },
   {
     claim: 'a gate on the measured wire after it cannot be put before it',
     source: 'NC section 4.4',
     first: 'qubit[2] q; bit c; c = measure q[0]; h q[0]; if (c) x q[1];',
     second: 'qubit[2] q; bit c; h q[0]; c = measure q[0]; if (c) x q[1];',
-    contract: { ...only(2, [0, 1], [1]) },
+    contract: { ...carrying(2, [0, 1], [1]) },
     verdict: 'different',
   },
   {
@@ -123,14 +123,14 @@ const PAIRS: readonly Pair[] = [
     source: 'NC section 4.4, principle of implicit measurement',
     first: 'qubit[2] q; bit c; h q[0]; cx q[0], q[1]; c = measure q[0]; c = 0;',
     second: 'qubit[2] q; bit c; h q[0]; cx q[0], q[1];',
-    contract: only(2, [0, 1], [1]),
+    contract: carrying(2, [0, 1], [1]),
   },
   {
     claim: 'entanglement swapping leaves a Bell pair between wires that never met',
     source: 'Zukowski et al., PRL 71, 4287 (1993)',
     first: `qubit[4] q; bit[2] c; ${bell(0, 1)} ${bell(2, 3)} ${bellMeasurement(1, 2, 0, 1)} if (c[1]) x q[3]; if (c[0]) z q[3]; c[0] = 0; c[1] = 0;`,
     second: `qubit[4] q; bit[2] c; ${bell(0, 3)}`,
-    contract: only(4, [], [0, 3]),
+    contract: carrying(4, [], [0, 3]),
   },
   {
     claim: 'a T gate teleported: its magic state, one CX, one measurement, S X when it says so',
@@ -138,7 +138,7 @@ const PAIRS: readonly Pair[] = [
     first:
       'qubit[2] q; bit c; h q[1]; t q[1]; cx q[0], q[1]; c = measure q[1]; if (c) s q[0]; c = 0;',
     second: 'qubit[2] q; bit c; t q[0];',
-    contract: only(2, [0], [0]),
+    contract: carrying(2, [0], [0]),
   },
   {
     claim: 'with S inverse in place of S it is another gate',
@@ -146,7 +146,7 @@ const PAIRS: readonly Pair[] = [
     first:
       'qubit[2] q; bit c; h q[1]; t q[1]; cx q[0], q[1]; c = measure q[1]; if (c) sdg q[0]; c = 0;',
     second: 'qubit[2] q; bit c; t q[0];',
-    contract: only(2, [0], [0]),
+    contract: carrying(2, [0], [0]),
     verdict: 'different',
   },
   {
@@ -154,14 +154,14 @@ const PAIRS: readonly Pair[] = [
     source: 'Zhou, Leung, Chuang, PRA 62, 052316 (2000)',
     first: 'qubit[2] q; bit c; h q[1]; cx q[1], q[0]; c = measure q[0]; if (c) x q[1]; c = 0;',
     second: 'qubit[2] q; bit c; swap q[0], q[1];',
-    contract: only(2, [0], [1]),
+    contract: carrying(2, [0], [1]),
   },
   {
     claim: 'a CX between stations by a shared pair and two bits',
     source: 'Eisert, Jacobs, Papadopoulos, Plenio, PRA 62, 052317 (2000)',
     first: `qubit[4] q; bit[2] c; ${bell(1, 2)} cx q[0], q[1]; c[0] = measure q[1]; if (c[0]) x q[2]; cx q[2], q[3]; h q[2]; c[1] = measure q[2]; if (c[1]) z q[0]; c[0] = 0; c[1] = 0;`,
     second: 'qubit[4] q; bit[2] c; cx q[0], q[3];',
-    contract: only(4, [0, 3], [0, 3]),
+    contract: carrying(4, [0, 3], [0, 3]),
   },
   {
     claim: 'the three-bit code corrects one flip',
@@ -169,14 +169,14 @@ const PAIRS: readonly Pair[] = [
     first:
       'qubit[5] q; bit[2] c; cx q[0], q[1]; cx q[0], q[2]; x q[1]; cx q[0], q[3]; cx q[1], q[3]; cx q[1], q[4]; cx q[2], q[4]; c[0] = measure q[3]; c[1] = measure q[4]; if (c[0] && !c[1]) x q[0]; if (c[0] && c[1]) x q[1]; if (!c[0] && c[1]) x q[2]; cx q[0], q[2]; cx q[0], q[1]; c[0] = 0; c[1] = 0;',
     second: 'qubit[5] q; bit[2] c;',
-    contract: only(5, [0], [0]),
+    contract: carrying(5, [0], [0]),
   },
   {
     claim: 'the three-bit code does not correct a phase flip',
     source: 'NC section 10.1.2',
     first: 'qubit[3] q; cx q[0], q[1]; cx q[0], q[2]; z q[1]; cx q[0], q[2]; cx q[0], q[1];',
     second: 'qubit[3] q;',
-    contract: only(3, [0], [0]),
+    contract: carrying(3, [0], [0]),
     verdict: 'different',
   },
   ...[2, 3, 4].map(
@@ -185,7 +185,7 @@ const PAIRS: readonly Pair[] = [
       source: 'Griffiths, Niu, PRL 76, 3228 (1996)',
       first: fourier(n, 'coherent'),
       second: fourier(n, 'conditions'),
-      contract: any,
+      contract: anyInput,
     }),
   ),
   {
@@ -263,7 +263,7 @@ const PAIRS: readonly Pair[] = [
     source: 'NC figure 4.10; Barenco et al., PRA 52, 3457 (1995), section VII',
     first: 'qubit[5] q; ccx q[0], q[1], q[3]; ccx q[3], q[2], q[4]; ccx q[0], q[1], q[3];',
     second: 'qubit[5] q; ctrl(3) @ x q[0], q[1], q[2], q[4];',
-    contract: only(5, [0, 1, 2, 4], [0, 1, 2, 3, 4]),
+    contract: carrying(5, [0, 1, 2, 4], [0, 1, 2, 3, 4]),
   },
   {
     claim: 'with a dirty work wire that circuit is another one',
