@@ -63,6 +63,7 @@ export const kernels: Kernels = simdKernels() ?? plainKernels;
 
 function wrap(wasm: Exports): Kernels {
   let view = new Float64Array(wasm.memory.buffer);
+  let integers = new Int32Array(wasm.memory.buffer);
   /** Makes room for blocks of these many doubles; returns their places, each a multiple of 16 bytes. */
   const places = (...sizes: number[]): number[] => {
     let end = BASE_BYTES / 8;
@@ -73,7 +74,10 @@ function wrap(wasm: Exports): Kernels {
     });
     const missing = end * 8 - wasm.memory.buffer.byteLength;
     if (missing > 0) wasm.memory.grow(Math.ceil(missing / PAGE_BYTES));
-    if (view.buffer !== wasm.memory.buffer) view = new Float64Array(wasm.memory.buffer);
+    if (missing > 0) {
+      view = new Float64Array(wasm.memory.buffer);
+      integers = new Int32Array(wasm.memory.buffer);
+    }
     return found;
   };
   /** Copies rows of `width` doubles to rows of `line` doubles. */
@@ -149,11 +153,22 @@ function wrap(wasm: Exports): Kernels {
       if (wasm.cholesky(8 * o, 8 * q, 8 * s, p, line) === 0) return false;
       view.set(b, s);
       wasm.solve(8 * s, 8 * o, p, line);
-      b.set(view.subarray(s, s + p));
+      copyOut(b, view, s, p);
       return true;
     },
-    ...sweeps(wasm, places, () => view),
+    ...sweeps(
+      wasm,
+      places,
+      () => view,
+      () => integers,
+    ),
   };
+}
+
+/** out = the `count` doubles from `from` on; short runs one by one, which spares a view. */
+function copyOut(out: Float64Array, view: Float64Array, from: number, count: number): void {
+  if (count > 512) out.set(view.subarray(from, from + count));
+  else for (let k = 0; k < count; k++) out[k] = view[from + k]!;
 }
 
 /** Spare doubles in the working memory of a sweep: its phase. */
@@ -163,6 +178,7 @@ function sweeps(
   wasm: Exports,
   places: (...sizes: number[]) => number[],
   memory: () => Float64Array,
+  integers: () => Int32Array,
 ): Pick<Kernels, 'evolveInto' | 'gapOf' | 'slopeInto' | 'lineariseInto'> {
   /** Copies a chain in; its arguments, and the places of blocks of these many doubles after it. */
   const load = (
@@ -174,7 +190,7 @@ function sweeps(
     const all = places(held, matrices.length, turns.length, ...sizes);
     const [s, m, t] = all as [number, number, number];
     const view = memory();
-    new Int32Array(view.buffer, 8 * s, steps.length).set(steps);
+    integers().set(steps, 2 * s);
     view.set(matrices, m);
     view.set(turns, t);
     return { chain: [8 * s, steps.length / 4, 8 * m, 8 * t], free: all.slice(3) };
@@ -202,7 +218,7 @@ function sweeps(
       const [u, g, work] = free as [number, number, number];
       memory().set(target, u);
       const value = wasm.slope(8 * g, 8 * work, d, ...chain, 8 * u);
-      gradient.set(memory().subarray(g, g + angles));
+      copyOut(gradient, memory(), g, angles);
       return value;
     },
     lineariseInto(normal, gradient, sweep, turns, target) {
@@ -216,8 +232,8 @@ function sweeps(
       const addresses = [n, g, rows, work].map((place) => 8 * place);
       const [toN, toG, toRows, toWork] = addresses as [number, number, number, number];
       const value = wasm.linearise(toN, toG, toRows, toWork, d, p, size, ...chain, 8 * u);
-      gradient.set(view.subarray(g, g + p));
-      normal.set(view.subarray(n, n + p * p));
+      copyOut(gradient, view, g, p);
+      copyOut(normal, view, n, p * p);
       return value;
     },
   };
