@@ -16,6 +16,7 @@ import type { Device } from './device/device.ts';
 import { estimateSuccess } from './device/estimate.ts';
 import { InputError } from './input-error.ts';
 import type { RunJobs } from './jobs.ts';
+import { MATRIX_WIRES_MAX } from './native/decompose.ts';
 import { type NativeSet, nativeSetOf } from './native/native-set.ts';
 import { toNative } from './native/to-native.ts';
 import {
@@ -140,7 +141,7 @@ async function alongRoad(
 
 /** The narrower circuit of a road that leads somewhere, or why the road turned out to be closed. */
 async function rewrite(
-  { original, contract, native, options, seed, control }: Job,
+  { original, contract, native, options, seed, control, notes }: Job,
   road: Road & { kind: 'structure' | 'chain' | 'feed-forward' },
 ): Promise<Gates | string> {
   if (road.kind === 'structure') {
@@ -154,11 +155,11 @@ async function rewrite(
   const fit = { entangler: native.entangler, seed, goal: FIT_GOAL, runJobs, control };
   const reshaped = await reshape(road, (output) => bitOfOutput(original, contract, output), fit);
   if (!reshaped) return 'but its blocks would depend on too many bits at once';
-  if (reshaped.events.some(isUnfitted)) {
-    return control.stopped()
-      ? 'but it was stopped before its blocks were fitted'
-      : 'but the fit of a block did not reach it; another seed may';
+  const unfitted = reshaped.events.flatMap(wiresOfUnfitted);
+  if (unfitted.some((wires) => wires > MATRIX_WIRES_MAX)) {
+    return `but one of its blocks has ${Math.max(...unfitted)} wires, and ${MATRIX_WIRES_MAX} is the limit for writing it in gates`;
   }
+  if (unfitted.length > 0) notes.push(decomposedNote(unfitted, control.stopped()));
   const narrowed = assembleWires(reshaped.events, original, contract);
   return { narrowed: inNativeGates(narrowed, contract, native), fits: reshaped.fits };
 }
@@ -213,14 +214,18 @@ function keptOutput({ annotations }: Operation, contract: Contract): boolean {
   });
 }
 
-/** A block of three wires or more that is still a matrix: no exact network is known for it. */
-function isUnfitted(event: WireEvent): boolean {
-  return (
-    event.kind === 'operation' &&
-    event.operation.kind === 'gate' &&
-    event.operation.matrix !== undefined &&
-    event.operation.wires.length > 2
-  );
+/** Wires of a block of three or more that is still a matrix: native gates come from a decomposition, not from a fit. */
+function wiresOfUnfitted(event: WireEvent): number[] {
+  const { operation } = event.kind === 'operation' ? event : {};
+  const isBlock = operation?.kind === 'gate' && operation.matrix !== undefined;
+  return isBlock && operation.wires.length > 2 ? [operation.wires.length] : [];
+}
+
+function decomposedNote(unfitted: readonly number[], isStopped: boolean): string {
+  const [most, blocks] = [Math.max(...unfitted), unfitted.length];
+  const what = blocks === 1 ? `a block of ${most} wires was` : `${blocks} blocks of at most ${most} wires were`; // biome-ignore format: one choice
+  const why = isStopped ? 'its time was over' : 'no fit was tried or reached it';
+  return `${what} written by a decomposition, in more gates than a fit takes: ${why}`;
 }
 
 function closedAfterAll(road: Road, why: string): Road & { kind: 'undecided' } {

@@ -5,7 +5,7 @@
  * block's pulled-back Paulis of the carriers that go no further; the unitary on the others by which V and the
  * block then differ joins the next block. The rest is fitted at once as soon as it is small, so that the
  * freedom between its blocks is used in full (a generic chain of two 3-wire blocks on 4 wires: 25 CX, the
- * dimension bound). A block that does not fit stays a matrix.
+ * dimension bound). A block that does not fit, or has more than `FIT_WIRES_MAX` wires, stays a matrix.
  * Result: gates on carriers in order; `distance` is D between them and the chain's target, computed anew.
  */
 
@@ -47,6 +47,9 @@ import {
 /** What is left of a chain is fitted at once when it has no more carriers and blocks than this. */
 const JOINT_WIRES_MAX = 4;
 const JOINT_BLOCKS_MAX = 3;
+
+/** Larger blocks would be fitted for minutes or hours: their matrices can be decomposed. */
+const FIT_WIRES_MAX = 4;
 
 /** Blocks are searched for structure up to this size and this many entanglers. */
 const SIMPLE_WIRES_MAX = 3;
@@ -169,7 +172,8 @@ async function fitInTurn(
       }
     }
     const heir = needs[b]!.shared.length === 1 ? heirOf(blocks, b) : undefined;
-    const found = wires.length > 1 ? await fitOneBlock(matrix, needs[b]!, heir, b, options) : null;
+    const isFitted = wires.length > 1 && wires.length <= FIT_WIRES_MAX;
+    const found = isFitted ? await fitOneBlock(matrix, needs[b]!, heir, b, options) : null;
     if (!found) operations.push(unitaryGate(matrix, wires, 'block'));
     else {
       keep(found, wires, b);
