@@ -60,6 +60,8 @@ export class FitObjective implements NormalProblem {
   /** The target where the kernels do the whole work: a unitary, and steps they know. */
   private readonly direct: Float64Array | undefined;
   private readonly turns: Float64Array;
+  /** P'/2 of every angle as the kernels pack it, where the rows are made of it here. */
+  private readonly packed: Float64Array;
 
   constructor(template: Template, target: FitTarget, frozen?: Uint8Array) {
     const n = template.wires;
@@ -76,6 +78,7 @@ export class FitObjective implements NormalProblem {
     this.turns = new Float64Array(2 * this.size);
     this.sweep = sweepOf(this.steps, d, this.size);
     this.direct = target.kind === 'unitary' && this.sweep ? target.matrix : undefined;
+    this.packed = new Float64Array(this.sweep && !this.direct ? this.size * d * d : 0);
     const width = this.residualWidth();
     this.rows = new Float64Array(this.direct ? 0 : this.size * width);
     this.residual = new Float64Array(width);
@@ -159,9 +162,17 @@ export class FitObjective implements NormalProblem {
     const width = this.residual.length;
     // the residual is of V itself; the P' need V step by step
     const last = this.target.kind === 'carry' ? this.pulledNow() : undefined;
-    this.evolve(angles, (angle) => {
-      this.rowOf(angle, last);
-    });
+    if (this.sweep) {
+      kernels.rowsInto(this.packed, this.x, this.sweep, this.turns);
+      for (let angle = 0; angle < this.size; angle++) {
+        unpackHermitian(this.hermitian, this.packed, angle * this.d * this.d, this.d);
+        this.rowOf(angle, last);
+      }
+    } else {
+      this.evolve(angles, (angle) => {
+        this.rowOf(angle, last);
+      });
+    }
     if (this.frozen) {
       for (let k = 0; k < this.size; k++) {
         if (this.frozen[k]) this.rows.fill(0, k * width, (k + 1) * width);
@@ -431,6 +442,23 @@ function packHermitian(
     for (let j = i + 1; j < d; j++) {
       out[at + i * d + j] = root * h[i * d + j]!;
       out[at + j * d + i] = root * h[im + i * d + j]!;
+    }
+  }
+}
+
+/** The Hermitian matrix that `packHermitian` packed at scale 1/2. */
+function unpackHermitian(h: Float64Array, packed: Float64Array, at: number, d: number): void {
+  const im = d * d;
+  for (let i = 0; i < d; i++) {
+    h[i * d + i] = 2 * packed[at + i * d + i]!;
+    h[im + i * d + i] = 0;
+    for (let j = i + 1; j < d; j++) {
+      const x = Math.SQRT2 * packed[at + i * d + j]!;
+      const y = Math.SQRT2 * packed[at + j * d + i]!;
+      h[i * d + j] = x;
+      h[j * d + i] = x;
+      h[im + i * d + j] = y;
+      h[im + j * d + i] = -y;
     }
   }
 }

@@ -127,13 +127,16 @@ describe('the compiled kernels return the bytes of their plain twins', () => {
     const target = draw(2 * d * d, 'target', n);
     const [a, b] = twins.map((twin) => {
       const x = twin.evolveInto(new Float64Array(2 * d * d), sweep, turns);
+      const rows = new Float64Array(angles * d * d);
+      const again = twin.rowsInto(rows, new Float64Array(2 * d * d), sweep, turns);
+      expect(again).toEqual(x);
       const gap = twin.gapOf(sweep, turns, target);
       const [slope, gradient] = [new Float64Array(angles), new Float64Array(angles)];
       const normal = new Float64Array(angles * angles);
       expect(twin.slopeInto(slope, sweep, turns, target)).toBe(gap);
       expect(twin.lineariseInto(normal, gradient, sweep, turns, target)).toBe(gap);
       for (let r = 0; r < angles; r++) normal.fill(0, r * angles + r + 1, (r + 1) * angles);
-      return { x, gap, slope, gradient, normal };
+      return { x, rows, gap, slope, gradient, normal };
     });
     expect(b).toEqual(a);
     // two roads to one gradient; they agree only where every step is unitary

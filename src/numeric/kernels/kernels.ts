@@ -19,6 +19,14 @@ type Exports = {
   cholesky(l: number, a: number, shift: number, p: number, line: number): number;
   solve(b: number, l: number, p: number, line: number): void;
   evolve(x: number, d: number, ...chain: ChainPlaces): void;
+  jacobian(
+    rows: number,
+    x: number,
+    half: number,
+    d: number,
+    line: number,
+    ...chain: ChainPlaces
+  ): void;
   gap(w: number, x: number, target: number, phase: number, d: number): number;
   slope(gradient: number, work: number, d: number, ...rest: [...ChainPlaces, number]): number;
   linearise(
@@ -179,7 +187,7 @@ function sweeps(
   places: (...sizes: number[]) => number[],
   memory: () => Float64Array,
   integers: () => Int32Array,
-): Pick<Kernels, 'evolveInto' | 'gapOf' | 'slopeInto' | 'lineariseInto'> {
+): Pick<Kernels, 'evolveInto' | 'rowsInto' | 'gapOf' | 'slopeInto' | 'lineariseInto'> {
   /** Copies a chain in; its arguments, and the places of blocks of these many doubles after it. */
   const load = (
     { steps, matrices }: Sweep,
@@ -202,6 +210,15 @@ function sweeps(
       const [at] = free as [number];
       wasm.evolve(8 * at, sweep.d, ...chain);
       x.set(memory().subarray(at, at + size));
+      return x;
+    },
+    rowsInto(rows, x, sweep, turns) {
+      const size = sweep.d ** 2;
+      const { chain, free } = load(sweep, turns, 2 * size, size, size * sweep.angles);
+      const [at, half, first] = free as [number, number, number];
+      wasm.jacobian(8 * first, 8 * at, 8 * half, sweep.d, size, ...chain);
+      copyOut(x, memory(), at, 2 * size);
+      copyOut(rows, memory(), first, size * sweep.angles);
       return x;
     },
     gapOf(sweep, turns, target) {

@@ -53,6 +53,25 @@ export function slopeInto(
   return value;
 }
 
+/** x = the product of all steps; fills the packed P'/2 of every angle, angles x d^2. */
+export function rowsInto(
+  rows: Float64Array,
+  x: Float64Array,
+  sweep: Sweep,
+  turns: Float64Array,
+): Float64Array {
+  const { d, steps } = sweep;
+  const width = d * d;
+  const half = new Float64Array(width);
+  reset(x, d);
+  for (let step = 0; step < steps.length; step += 4) {
+    advance(x, sweep, step, turns);
+    const kind = steps[step]!;
+    if (kind < 3) pauliInto(rows, steps[step + 3]! * width, x, half, d, steps[step + 1]!, kind);
+  }
+  return x;
+}
+
 /** F; fills the gradient and the rows of the Jacobian, angles x d^2. */
 export function jacobianInto(
   rows: Float64Array,
@@ -61,16 +80,9 @@ export function jacobianInto(
   turns: Float64Array,
   target: Float64Array,
 ): number {
-  const { d, steps, angles } = sweep;
+  const { d, angles } = sweep;
   const width = d * d;
-  const x = new Float64Array(2 * width);
-  const half = new Float64Array(width);
-  reset(x, d);
-  for (let step = 0; step < steps.length; step += 4) {
-    advance(x, sweep, step, turns);
-    const kind = steps[step]!;
-    if (kind < 3) pauliInto(rows, steps[step + 3]! * width, x, half, d, steps[step + 1]!, kind);
-  }
+  const x = rowsInto(rows, new Float64Array(2 * width), sweep, turns);
   const { value, s } = tiltOf(x, target, d);
   const packed = new Float64Array(width);
   for (let i = 0; i < d; i++) {

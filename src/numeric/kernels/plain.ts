@@ -6,7 +6,7 @@
  * vector of two lanes does, so both twins return the same bytes.
  * Cost: gram p^2 m / 2, multiply 4 m k n, square 2 d^2 rows, cholesky p^3 / 6 multiply-adds.
  */
-import { evolveInto, gapOf, jacobianInto, type Sweep, slopeInto } from './plain-sweep.ts';
+import { evolveInto, gapOf, jacobianInto, rowsInto, type Sweep, slopeInto } from './plain-sweep.ts';
 
 export type Kernels = {
   /** Lower triangle of out = j j^T for the real p x m matrix j. */
@@ -28,6 +28,8 @@ export type Kernels = {
   solveInto(b: Float64Array, a: Float64Array, shift: Float64Array, p: number): boolean;
   /** x = the product of the steps. */
   evolveInto(x: Float64Array, sweep: Sweep, turns: Float64Array): Float64Array;
+  /** The same, and for every angle the packed P'/2 (plain-sweep.ts) as a row of d^2 numbers. */
+  rowsInto(rows: Float64Array, x: Float64Array, sweep: Sweep, turns: Float64Array): Float64Array;
   /** |target - e^{-i phi} V|^2 / 2, V the product of the steps. */
   gapOf(sweep: Sweep, turns: Float64Array, target: Float64Array): number;
   /** The same, with its gradient. */
@@ -54,6 +56,7 @@ export const plainKernels: Kernels = Object.freeze({
   choleskyInto,
   solveInto,
   evolveInto,
+  rowsInto,
   gapOf,
   slopeInto,
   lineariseInto,

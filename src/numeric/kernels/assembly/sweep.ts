@@ -236,13 +236,11 @@ function tilt(r: usize, phase: usize, d: i32): void {
   }
 }
 
-/** F, its gradient and the lower triangle of the Gauss-Newton matrix; `rows` is p x d^2, `line` doubles a row. */
-export function linearise(
-  normal: usize, gradient: usize, rows: usize, work: usize, d: i32, p: i32, line: i32,
-  steps: usize, count: i32, matrices: usize, turns: usize, target: usize,
-): f64 {
-  const size = usize(d * d) << 3;
-  const x = work; const w = x + 2 * size; const r = w + 2 * size; const half = r + 2 * size; const phase = half + size;
+/** Packed P' / 2 of every angle in `rows`, of `line` doubles each; the product of all steps stays in x. */
+export function jacobian(
+  rows: usize, x: usize, half: usize, d: i32, line: i32,
+  steps: usize, count: i32, matrices: usize, turns: usize,
+): void {
   const end = steps + (usize(count) << 4);
   const row = usize(line) << 3;
   reset(x, d);
@@ -253,6 +251,17 @@ export function linearise(
       pauli(rows + usize(i32.load(step, 12)) * row, x, half, d, i32.load(step, 4), kind);
     }
   }
+}
+
+/** F, its gradient and the lower triangle of the Gauss-Newton matrix; `rows` is p x d^2, `line` doubles a row. */
+export function linearise(
+  normal: usize, gradient: usize, rows: usize, work: usize, d: i32, p: i32, line: i32,
+  steps: usize, count: i32, matrices: usize, turns: usize, target: usize,
+): f64 {
+  const size = usize(d * d) << 3;
+  const x = work; const w = x + 2 * size; const r = w + 2 * size; const half = r + 2 * size; const phase = half + size;
+  const row = usize(line) << 3;
+  jacobian(rows, x, half, d, line, steps, count, matrices, turns);
   const value = gap(w, x, target, phase, d);
   product(r, x, w, d);
   tilt(r, phase, d);
