@@ -60,21 +60,28 @@ export function chooseRoad(wish: Wish): Road {
   const structural = narrowed.circuit.wires;
   if (wanted !== undefined && structural <= wanted) return byStructure(narrowed, n);
   const u = structural > 1 ? unitaryOf(circuit, INFLUENCE_WIRES_MAX) : null;
-  if (!u) return throughWindows(wish, plan, structural, wanted ?? structural - 1) ?? withoutMatrix(wish, narrowed); // biome-ignore format: one choice
+  if (!u) {
+    const windows = windowsFor(wish, plan, structural);
+    return windows && windows.width <= (wanted ?? structural - 1)
+      ? byWindows(plan, windows, structural, null)
+      : withoutMatrix(wish, narrowed);
+  }
   const measured = wish.contract.outputs.map((rule) => rule === 'measured');
   const question = { u, wires: n, measured, stopped: wish.stopped };
   const causal = causalWidth(question);
   const goal = wanted ?? causal.width;
   if (causal.width < structural && causal.width <= goal) {
-    const windows = throughWindows(wish, plan, structural, goal);
-    if (windows) return windows;
+    const windows = windowsFor(wish, plan, structural);
+    if (windows && windows.width <= goal) return byWindows(plan, windows, structural, causal.width);
     // feed-forward only where it saves wires
     const asKept = { ...question, measured: measured.map(() => false) };
     const quantum = measured.includes(true) ? causalWidth(asKept) : causal;
     const isEnough = quantum.width <= Math.max(causal.width, wanted ?? 0);
-    return isEnough
+    const road = isEnough
       ? byChain(asKept, quantum, structural)
       : byFeedForward(question, causal, structural);
+    const nearly = windows ? `; windows of a few gates alone come to ${windows.width}` : '';
+    return { ...road, reason: road.reason + nearly };
   }
   const nearest = measured.includes(true)
     ? null
@@ -84,20 +91,32 @@ export function chooseRoad(wish: Wish): Road {
   return nearest ?? impossibleMeasured(wish, causal);
 }
 
-/** Windows with which the circuit needs no more than `goal` wires; null where there are none. */
-function throughWindows(
+type Windows = { windows: readonly Window[]; width: number };
+
+/** Windows with which the circuit needs fewer wires than its structure does; null where there are none. */
+function windowsFor(
   { circuit, withoutWindows = false, stopped }: Wish,
   plan: StructurePlan,
   structural: number,
-  goal: number,
-): Road | null {
+): Windows | null {
   const isWorthIt = circuit.wires > WINDOW_WIRES && circuit.operations.length <= WINDOW_OPERATIONS_MAX; // biome-ignore format: one condition
   if (withoutWindows || structural <= 1 || !isWorthIt) return null;
-  const found = planWindows(plan, { stopped });
-  const { windows, width } = found;
-  if (windows.length === 0 || width.width >= structural || width.width > goal) return null;
+  const { windows, width } = planWindows(plan, { stopped });
+  return windows.length > 0 && width.width < structural ? { windows, width: width.width } : null;
+}
+
+/** `dense`: what the matrix of the whole allows, where it is known. */
+function byWindows(
+  plan: StructurePlan,
+  { windows, width }: Windows,
+  structural: number,
+  dense: number | null,
+): Road {
   const where = windows.length === 1 ? 'one window' : `${windows.length} windows`;
-  const reason = `the order of the gates needs ${count(structural)}, but the influence in ${where} of a few gates allows ${width.width}`;
+  const order = `the order of the gates needs ${count(structural)}`;
+  const whole =
+    dense === null ? '' : dense === width ? ', as few as that of the whole' : `; that of the whole allows ${dense}`; // biome-ignore format: one choice
+  const reason = `${order}, but the influence in ${where} of a few gates allows ${width}${whole}`;
   return { kind: 'windows', reason, plan, windows };
 }
 
