@@ -210,7 +210,10 @@ class Assembly {
 
   finish(rules: readonly string[]): NarrowedCircuit {
     const { original } = this;
-    const wires = this.used;
+    // a circuit of whose qubits nobody sees anything needs no wire, but a text without one is none
+    const wires = Math.max(1, this.used);
+    const start: Operation[] =
+      this.used > 0 ? [] : [{ kind: 'reset', wire: 0, annotations: ['wiregauge.enters 0'] }];
     const bitRegisters = [...original.bitRegisters];
     const taken = new Set(bitRegisters.map(({ name }) => name));
     let bits = original.bits;
@@ -220,8 +223,9 @@ class Assembly {
       bits += size;
     }
     taken.add('out');
-    const qubits: Register[] =
-      wires > 0 ? [{ name: freeName('q', taken), first: 0, size: wires, scalar: false }] : [];
+    const qubits: Register[] = [
+      { name: freeName('q', taken), first: 0, size: wires, scalar: false },
+    ];
     return {
       circuit: {
         name: original.name,
@@ -229,7 +233,7 @@ class Assembly {
         bits,
         qubitRegisters: qubits,
         bitRegisters,
-        operations: this.operations,
+        operations: [...start, ...this.operations],
         globalPhase: original.globalPhase,
       },
       reuse: this.reuse,

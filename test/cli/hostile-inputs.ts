@@ -61,6 +61,7 @@ export const ALLOWED: { readonly [name: string]: string } = {
   'a power of a gate of 100,000': `${HEAD}gate g a { ${'t a; '.repeat(100_000)} } qubit q; pow(2) @ g q;`,
   'lines that end as on other systems': `${HEAD}qubit q;\nh q;\n`.replaceAll('\n', '\r\n'),
   'a mark of byte order': `\uFEFF${HEAD}qubit q; h q;`,
+  'a program that nobody looks at': `${HEAD}qubit[2] q; bit[3] c; h q[0]; reset q[0];`,
   'a thousand wires': `${HEAD}qubit[1000] q; h q;`,
 };
 

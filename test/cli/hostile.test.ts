@@ -72,7 +72,10 @@ test('texts that must be refused are, by whichever command', () => {
 }, 300_000);
 
 test('texts that are allowed end with an answer or a limit', () => {
-  run(withCommands(ALLOWED, 4));
+  const ended = run(withCommands(ALLOWED, 4));
+  for (const name of ['narrow: a program that nobody looks at', 'compare: conditions that double', 'compare: parities that double', 'build: a thousand wires']) {
+    expect({ name, outcome: ended.find((one) => one.name === name)?.outcome }).toEqual({ name, outcome: 'exit 0' });
+  } // biome-ignore format: one list
 }, 300_000);
 
 test('matrices, expressions and devices', () => {
