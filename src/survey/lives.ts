@@ -68,6 +68,8 @@ export function livesOf(circuit: Circuit, contract: Contract): LifeCircuit {
   }));
   const carrierOf = Int32Array.from({ length: wires }, (_, wire) => wire);
   const lastNode: number[] = new Array(wires).fill(-1);
+  /** Carriers that a swap has moved since their last operation: what was measured into a bit is then an outcome by itself. */
+  const isMoved = new Set<number>();
   const nodes: LifeNode[] = [];
   let barriers = 0;
   for (const operation of circuit.operations) {
@@ -78,6 +80,7 @@ export function livesOf(circuit: Circuit, contract: Contract): LifeCircuit {
     if (isSwap(operation)) {
       const [a, b] = operation.wires as [number, number]; // a swap has two operands
       [carrierOf[a], carrierOf[b]] = [carrierOf[b]!, carrierOf[a]!];
+      isMoved.add(carrierOf[a]!).add(carrierOf[b]!);
       continue;
     }
     if (operation.kind === 'reset' && !operation.condition) {
@@ -91,7 +94,10 @@ export function livesOf(circuit: Circuit, contract: Contract): LifeCircuit {
       continue;
     }
     const moved = onCarriers(operation, carrierOf);
-    for (const carrier of operationWires(moved)) lastNode[carrier] = nodes.length;
+    for (const carrier of operationWires(moved)) {
+      lastNode[carrier] = nodes.length;
+      isMoved.delete(carrier);
+    }
     nodes.push({ operation: moved, end: -1 });
   }
   for (let wire = 0; wire < wires; wire++) {
@@ -99,7 +105,8 @@ export function livesOf(circuit: Circuit, contract: Contract): LifeCircuit {
     const life = lives[carrier]!;
     life.output = wire;
     life.rule = contract.outputs[wire]!;
-    endLife(life, nodes, lastNode[carrier]!, carrier);
+    if (!(isMoved.has(carrier) && life.rule === 'measured'))
+      endLife(life, nodes, lastNode[carrier]!, carrier);
   }
   const ended = new Set(nodes.map(({ end }) => end));
   lives.forEach((_, carrier) => {
