@@ -4,9 +4,11 @@
  * Taking a window as one gate of which only the influence counts can only loosen the relation between
  * carriers, so compatible windows (no common gate, no cycle between them) are taken greedily, in several
  * orders of preference, first by how many pairs of the whole each of them unties alone; then windows left out are tried in
- * place of those in their way; the windows without which the width stays the same are given back, the longest first.
+ * place of those in their way; the windows without which the width stays the same are given back, the longest first, and
+ * longer ones of the same influence take the place of those that stay.
  * Cost: linear in windows times nodes, and one width plan for each window taken.
  */
+import { operationWires } from '../circuit/circuit.ts';
 import { contracted } from './contracted.ts';
 import type { StructureOfLives } from './early.ts';
 import type { LifeCircuit } from './lives.ts';
@@ -36,6 +38,8 @@ const EFFORT = 5;
 const EXCHANGES_MAX = 60;
 /** How many windows are tried alone, times the nodes of the circuit. */
 const ALONE_WORK_MAX = 2e6;
+const LONGER_MIN = 3;
+const LONGER_TRIED_MAX = 8;
 /** Preferences: by gain, by few carriers, by gain for each gate. */
 const PREFERENCES: readonly ((a: WindowCandidate, b: WindowCandidate) => number)[] = [
   (a, b) => b.gain - a.gain || a.nodes.length - b.nodes.length,
@@ -100,6 +104,19 @@ export function chooseWindows(
     const width = planWidth(relation, { effort });
     if (width.width <= bestPlan.width) [best, bestPlan, bestRelation] = [fewer, width, relation];
   }
+  // a longer window of the same influence is made of as many new gates, and takes more of the old ones in
+  for (const candidate of best) {
+    for (const longer of longerOf(circuit, candidate, candidates)) {
+      if (stopped()) break;
+      const others = best.map((other) => (other === candidate ? longer : other));
+      if (compatible(circuit, others).length < others.length) continue;
+      const relation = relationWith(others);
+      const width = planWidth(relation, { effort });
+      if (width.width > bestPlan.width) continue;
+      [best, bestPlan, bestRelation] = [others, width, relation];
+      break;
+    }
+  }
   return {
     windows: best,
     relation: bestRelation,
@@ -123,6 +140,26 @@ function untiedAlone(
     found.set(candidate, all - tiesOf(relationWith([candidate])));
   }
   return found;
+}
+
+/** Windows that hold all gates of another and `LONGER_MIN` more entanglers, with the same influence; the longest first. */
+function longerOf(
+  { nodes }: LifeCircuit,
+  candidate: WindowCandidate,
+  candidates: readonly WindowCandidate[],
+): WindowCandidate[] {
+  const entanglers = (window: WindowCandidate): number =>
+    window.nodes.filter((node) => operationWires(nodes[node]!.operation!).length > 1).length; // windows are made of gates
+  const key = (window: WindowCandidate): string => JSON.stringify([window.carriers, window.needs]);
+  const [own, least] = [key(candidate), entanglers(candidate) + LONGER_MIN];
+  return candidates
+    .filter((other) => {
+      if (entanglers(other) < least || key(other) !== own) return false;
+      const held = new Set(other.nodes);
+      return candidate.nodes.every((node) => held.has(node));
+    })
+    .sort((a, b) => entanglers(b) - entanglers(a) || a.nodes.length - b.nodes.length)
+    .slice(0, LONGER_TRIED_MAX);
 }
 
 /** How many pairs of carriers a relation ties. */

@@ -30,6 +30,8 @@ test.each([
     expect(report.windows.length).toBe(openings);
     expect(report.distance!.hilbertSchmidt).toBeLessThan(1e-20);
     expect(report.after!.twoQubit).toBeLessThan(report.before.twoQubit);
+    // three for each generic gate of the staircase before it was hidden
+    expect(report.after!.twoQubit).toBeLessThanOrEqual(3 * (wires - 1));
     for (const { wires: on, entanglers } of report.windows) {
       expect(on.length).toBeLessThanOrEqual(4);
       expect(entanglers.after).toBeLessThan(entanglers.before);
