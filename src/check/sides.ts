@@ -18,6 +18,8 @@ import { type LineGate, type Lines, lineGate, linesOf } from './lines.ts';
 export type Sides = {
   left: LineGate[];
   right: LineGate[];
+  /** All their gates, seen or not: what is taken out may differ between two wordings of one circuit. */
+  asWritten: { left: LineGate[]; right: LineGate[] };
   /** Number of lines of both. */
   lines: number;
   zeroLines: number[];
@@ -37,8 +39,7 @@ export function sidesOf(
   const b = linesOf(rewritten, n, isAnnotated(rewritten));
   if (!a || !b) return null;
   const isBlock = partner.length === 0 && contract.outputs.every((rule) => rule === 'kept');
-  if (!isBlock && !sameEnds(a, b, contract, partner)) return null;
-  const swaps = isBlock ? swapsBetween(a, b) : [];
+  const swaps = swapsBetween(a, b, contract, partner);
   if (!swaps) return null;
   // a kept output is a qubit for somebody else: its outcome must not decide anything here
   const isRead = (output: number): boolean =>
@@ -50,9 +51,11 @@ export function sidesOf(
   if (contract.outputs.some((rule, output) => rule === 'kept' && isDephased(a, output) !== isDephased(b, output))) return null; // biome-ignore format: one condition
   const ends = endsOf(a, contract);
   const lines = Math.max(a.count, b.count);
+  const moved = [...b.gates, ...swaps];
   return {
     left: visible(a.gates, contract, ends),
-    right: visible([...b.gates, ...swaps], contract, ends),
+    right: visible(moved, contract, ends),
+    asWritten: { left: a.gates, right: moved },
     lines,
     // lines beyond the inputs are extra wires of one circuit
     zeroLines: Array.from({ length: lines }, (_, line) => line).filter((line) => contract.inputs[line] !== 'any'), // biome-ignore format: one list
@@ -62,40 +65,39 @@ export function sidesOf(
 
 type Ends = { isMeasured: Set<number>; isDropped: Set<number> };
 
-/** Swaps that bring the second circuit's outputs to the lines of the first one's; null when an output is missing. */
-function swapsBetween(a: Lines, b: Lines): LineGate[] | null {
+/** Swaps that bring what is seen of the second circuit to the lines of the first one; null when something is missing. */
+function swapsBetween(
+  a: Lines,
+  b: Lines,
+  { outputs }: Contract,
+  partner: readonly { original: number; rewritten: number }[],
+): LineGate[] | null {
+  const pairs = [
+    ...outputs.flatMap((rule, output): [number, number][] => (rule === 'dropped' ? [] : [[a.lineOfOutput[output]!, b.lineOfOutput[output]!]])), // biome-ignore format: one list
+    ...partner.map(({ original, rewritten }): [number, number] => [a.lineOfBit[original]!, b.lineOfBit[rewritten]!]), // biome-ignore format: one list
+  ];
+  const wanted = new Map<number, number>();
+  for (const [to, from] of pairs) {
+    if (to < 0 && from < 0) continue;
+    if (to < 0 || from < 0 || (wanted.get(from) ?? to) !== to) return null;
+    wanted.set(from, to);
+  }
+  if (new Set(wanted.values()).size < wanted.size) return null;
   const swaps: LineGate[] = [];
-  const lineOf = [...b.lineOfOutput];
-  if (lineOf.includes(-1) || a.lineOfOutput.includes(-1)) return null;
-  a.lineOfOutput.forEach((wanted, output) => {
-    const here = lineOf[output]!;
-    if (here === wanted) return;
-    swaps.push(lineGate([here, wanted], SWAP));
-    const other = lineOf.indexOf(wanted);
-    if (other >= 0) lineOf[other] = here;
-    lineOf[output] = wanted;
-  });
+  // where what stood on each line is by now
+  const now = new Map<number, number>();
+  for (const [from, to] of wanted) {
+    const here = now.get(from) ?? from;
+    if (here === to) continue;
+    swaps.push(lineGate([here, to], SWAP));
+    for (const other of wanted.keys()) if ((now.get(other) ?? other) === to) now.set(other, here);
+    now.set(from, to);
+  }
   return swaps;
 }
 
 const SWAP = new Float64Array(32);
 for (const at of [0, 6, 9, 15]) SWAP[at] = 1;
-
-/** Every output and bit must come from the same line in both. */
-function sameEnds(
-  a: Lines,
-  b: Lines,
-  contract: Contract,
-  partner: readonly { original: number; rewritten: number }[],
-): boolean {
-  const bitsAgree = partner.every(
-    ({ original, rewritten }) => a.lineOfBit[original] === b.lineOfBit[rewritten],
-  );
-  if (!bitsAgree) return false;
-  return contract.outputs.every(
-    (rule, output) => rule === 'dropped' || a.lineOfOutput[output] === b.lineOfOutput[output],
-  );
-}
 
 export function endsOf(a: Lines, { outputs }: Contract): Ends {
   const isMeasured = new Set<number>();
