@@ -93,7 +93,7 @@ def fit(job):
         seconds = solved = iterations = evaluations = 0
         for start in job["starts"]:
             x0 = np.array(start)
-            begin = time.perf_counter()
+            begin = time.process_time()
             if method == "least_squares":
                 r = least_squares(f.residual, x0, f.jacobian, method="trf", xtol=1e-15, ftol=1e-15, gtol=1e-15, max_nfev=300)
                 value, steps = r.cost, r.njev
@@ -103,7 +103,7 @@ def fit(job):
                     options.update(ftol=1e-16, maxfun=6000)
                 r = minimize(f.gradient, x0, jac=True, method=method, options=options)
                 value, steps = r.fun, r.nit
-            seconds += time.perf_counter() - begin
+            seconds += time.process_time() - begin
             iterations += int(steps)
             evaluations += 1
             if value / f.d <= goal:
