@@ -247,7 +247,7 @@ function checkedLinks(
   wires: number,
 ): readonly (readonly [number, number])[] {
   // circuits beyond the fits are only converted; a list of all pairs of 10,000 wires would fill the memory
-  if (!links && wires > CIRCUIT_WIRES_MAX) return [];
+  if (!links && wires > BUILD_WIRES_MAX) return [];
   const all: [number, number][] = [];
   if (!links) for (let a = 0; a < wires; a++) for (let b = a + 1; b < wires; b++) all.push([a, b]);
   const given = links?.filter(([a, b]) => a < wires && b < wires) ?? all;

@@ -31,7 +31,8 @@ import {
   type Template,
   templateOperations,
 } from '../reshape/template.ts';
-import { anglesEach } from './two-wire.ts';
+import { templateAngles } from './template-angles.ts';
+import { anglesEach, passingOf } from './two-wire.ts';
 import { dimensionBound, reordered, type Wanted, wireOrder } from './wanted.ts';
 
 export type SynthesisOptions = {
@@ -45,6 +46,8 @@ export type SynthesisOptions = {
   control: Control;
   /** A placement that is known to do, for example that of the circuit as written. */
   hint?: readonly Pair[];
+  /** The hint as a circuit in uses of the entangler, where there is one: its angles are a start that does. */
+  hintGates?: readonly GateOperation[];
   /** A part of a larger whole: few entanglers will do, no need to show that fewer do not. */
   isPart?: boolean;
 };
@@ -64,6 +67,12 @@ const SEARCH_MAX = 11;
 /** The same on four wires and more, where a level costs much more. */
 const SEARCH_MAX_WIDE = 7;
 const HINT_STARTS = 6;
+/** Ways down from a placement that does: removals begin at different places. On more wires a way takes minutes. */
+const DESCENTS = 5;
+const DESCENT_WIRES_MAX = 4;
+const DESCENT_COUNT_MAX = 24;
+/** So many of the shortest ends are gone on from with moves. */
+const ENDS_MAX = 2;
 const GENERIC_STARTS = 12;
 /** On five wires a fit takes a minute: a few entanglers to spare make the first start do. */
 const LARGE_WIRES = 5;
@@ -198,7 +207,15 @@ export class Search {
   private async fromHint(): Promise<Placement | null> {
     const { hint, tolerance } = this.options;
     if (!hint || hint.length >= this.generic) return null;
-    const list = Array.from({ length: HINT_STARTS }, () => ({ pairs: hint, start: null }));
+    const { hintGates } = this.options;
+    const passing = passingOf(this.options.entangler);
+    const known =
+      hintGates &&
+      templateAngles(hintGates, this.templateOf(hint), (side) => passing[side]?.sign ?? 1);
+    const list = [
+      ...(known ? [{ pairs: hint, start: known, isExact: true }] : []),
+      ...Array.from({ length: HINT_STARTS }, () => ({ pairs: hint, start: null })),
+    ];
     const [best] = await fitPlacements(list, {
       ...this.fitting,
       label: 'the placement as written',
@@ -206,8 +223,25 @@ export class Search {
     return best && best.distance <= tolerance ? this.shortened(best) : null;
   }
 
+  /** Several ways down, which end at different counts, and from the best of them with moves as well. */
   private async shortened(found: Placement): Promise<Placement> {
-    const best = await shorten(found, { ...this.fitting, links: this.options.links });
+    const { fitting } = this;
+    const isShort =
+      found.pairs.length <= DESCENT_COUNT_MAX && this.wanted.wires <= DESCENT_WIRES_MAX;
+    const ways = isShort ? DESCENTS : 1;
+    const ends = [found];
+    for (let way = 0; way < ways && !fitting.control.stopped(); way++) {
+      const label = `${fitting.label}, way ${way + 1}`;
+      const from = Math.floor((way * found.pairs.length) / ways);
+      ends.push(await shorten(found, { ...fitting, label, from }));
+    }
+    const fewest = Math.min(...ends.map(({ pairs }) => pairs.length));
+    const { links } = this.options;
+    let best = ends.find(({ pairs }) => pairs.length === fewest)!; // the minimum is one of them
+    for (const end of ends.filter(({ pairs }) => pairs.length === fewest).slice(0, ENDS_MAX)) {
+      const shorter = await shorten(end, { ...fitting, links });
+      if (shorter.pairs.length < best.pairs.length) best = shorter;
+    }
     this.note([best]);
     return best;
   }

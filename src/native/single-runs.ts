@@ -10,9 +10,8 @@
  * Result: for every run its gates; leaving nothing to the next run is one of the choices, and wins ties.
  */
 import { mul } from '../numeric/complex-matrix.ts';
-import { eulerAngles, type OneWireGate, type OneWireSet, oneWireGates, wrapped } from './euler.ts';
-
-export type Axis = 'x' | 'y' | 'z';
+import { type Axis, quaternion, rotationMatrix } from './axis-angles.ts';
+import { type OneWireGate, type OneWireSet, oneWireGates, wrapped } from './euler.ts';
 
 export type Run = {
   matrix: Float64Array | null;
@@ -77,7 +76,7 @@ function choices(whole: Float64Array | null, end: Run['end'], set: OneWireSet): 
   for (const angle of specialAngles(whole, end.axis)) {
     if (Math.abs(angle) < ANGLE_MIN) continue;
     const gates = oneWireGates(turned(whole, end.axis, -angle), set);
-    out.push({ gates, carried: rotation(end.axis, end.sign * angle) });
+    out.push({ gates, carried: rotationMatrix(end.axis, end.sign * angle) });
   }
   return out;
 }
@@ -114,30 +113,5 @@ function specialAngles(u: Float64Array, axis: Axis): number[] {
 
 /** R(angle) u. */
 function turned(u: Float64Array, axis: Axis, angle: number): Float64Array {
-  return mul(rotation(axis, angle), u, 2);
-}
-
-function rotation(axis: Axis, angle: number): Float64Array {
-  const [c, s] = [Math.cos(angle / 2), Math.sin(angle / 2)];
-  switch (axis) {
-    case 'x':
-      return Float64Array.from([c, 0, 0, c, 0, -s, -s, 0]);
-    case 'y':
-      return Float64Array.from([c, -s, s, c, 0, 0, 0, 0]);
-    case 'z':
-      return Float64Array.from([c, 0, 0, c, -s, 0, 0, s]);
-  }
-}
-
-/** u = e^{ia} (q0 - i (qx X + qy Y + qz Z)). */
-function quaternion(u: Float64Array): [number, number, number, number] {
-  const { t, f, l } = eulerAngles(u);
-  const [c, s] = [Math.cos(t / 2), Math.sin(t / 2)];
-  const [sum, difference] = [(f + l) / 2, (f - l) / 2];
-  return [
-    c * Math.cos(sum),
-    -s * Math.sin(difference),
-    s * Math.cos(difference),
-    c * Math.sin(sum),
-  ];
+  return mul(rotationMatrix(axis, angle), u, 2);
 }

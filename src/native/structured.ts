@@ -26,6 +26,8 @@ export type Structured = {
   operations: GateOperation[];
   /** What was recognised, as a sentence. */
   note: string;
+  /** Nothing is to be gained by fitting it anew: its parts are as short as they get by themselves. */
+  isFinal: boolean;
 };
 
 /** Builds a part on its own wires; `of` are the wires of the whole. */
@@ -39,17 +41,29 @@ export async function structuredGates(
   const factors = factorsOf(u, wires);
   if (factors.length > 1) {
     const groups = factors.map((factor) => factor.wires.join(',')).join(' | ');
-    return { operations: await built(factors, build), note: `a product of factors on ${groups}` };
+    return {
+      operations: await built(factors, build),
+      note: `a product of factors on ${groups}`,
+      isFinal: true,
+    };
   }
   if (isDiagonal(u, wires)) {
-    return { operations: diagonalGates(u, wires), note: 'diagonal: a sum of parities' };
+    return {
+      operations: diagonalGates(u, wires),
+      note: 'diagonal: a sum of parities',
+      isFinal: true,
+    };
   }
   const monomial = monomialOf(u, wires);
   if (monomial) {
-    const phases = diagonalOf(monomial.phases);
+    const phases = diagonalGates(diagonalOf(monomial.phases), wires);
+    const moves = permutationGates(monomial.to, wires);
+    // CX alone: the fewest, or nearly
+    const isFinal = phases.length === 0 && moves.every(({ wires: own }) => own.length <= 2);
     return {
-      operations: [...diagonalGates(phases, wires), ...permutationGates(monomial.to, wires)],
+      operations: [...phases, ...moves],
       note: 'a permutation of basis states, up to phases',
+      isFinal,
     };
   }
   return selected(u, wires, build);
@@ -152,7 +166,8 @@ async function selected(
   const isControl = isScalar(selection.g1) || isScalar(selection.g2);
   const verb = isControl ? 'controls' : 'selects';
   const exchange = swap ? `, with outputs ${swap.join(' and ')} exchanged` : '';
-  return { operations, note: `wire ${wire} ${verb} what happens to the others${exchange}` };
+  const note = `wire ${wire} ${verb} what happens to the others${exchange}`;
+  return { operations, note, isFinal: false };
 }
 
 function isScalar(g: Float64Array): boolean {

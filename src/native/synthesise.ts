@@ -120,18 +120,23 @@ function linked(
 /** What was taken apart, made shorter: on four wires as a whole, on more by windows. */
 async function improved(
   wanted: Wanted,
-  { operations, note }: Structured,
+  { operations, note, isFinal }: Structured,
   options: SynthesisOptions,
   use: EntanglerUse,
 ): Promise<Synthesis> {
   const before = usesIn(operations);
   const plain: Synthesis = { ...exact(operations, 0), boundKind: 'found', notes: [note] };
   if (before === 0) return { ...plain, boundKind: 'proven' };
-  const isRefined = note.startsWith('wire') || note.startsWith('a permutation');
-  if (wanted.wires === 4 && isRefined && use.kind !== 'adjustable') {
+  const isComplete = options.links.length === (wanted.wires * (wanted.wires - 1)) / 2;
+  if (isFinal && isComplete) return plain;
+  if (wanted.wires === 4 && use.kind !== 'adjustable') {
     const pairs = operations.flatMap(({ wires: [a, b] }): Pair[] => (b === undefined ? [] : [[a!, b]])); // biome-ignore format: one list
     const { hint: _, ...rest } = options;
-    const found = await new Search(wanted, { ...rest, hint: pairs }).runFromHint();
+    const found = await new Search(wanted, {
+      ...rest,
+      hint: pairs,
+      hintGates: operations,
+    }).runFromHint();
     const isBetter = usesIn(found.operations) < before;
     const isRight = (found.fits[0]?.distance ?? 1) <= options.tolerance;
     if (isBetter && isRight) return { ...found, notes: [note, ...found.notes] };

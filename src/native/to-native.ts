@@ -19,15 +19,20 @@ import {
   type Operation,
   operationWires,
 } from '../circuit/circuit.ts';
-import { PAULI } from '../circuit/gates.ts';
 import { gateMatrix } from '../circuit/unitary.ts';
 import { InputError } from '../input-error.ts';
-import { adjoint, identity, kron, mul } from '../numeric/complex-matrix.ts';
-import { entanglerMatrix } from '../reshape/template.ts';
+import { identity, kron, mul } from '../numeric/complex-matrix.ts';
 import { decompose } from './decompose.ts';
 import type { NativeSet } from './native-set.ts';
-import { type Axis, type Run, writeRuns } from './single-runs.ts';
-import { type EntanglerUse, entanglerUse, twoWireGates, usesNeeded } from './two-wire.ts';
+import { type Run, writeRuns } from './single-runs.ts';
+import {
+  type EntanglerUse,
+  entanglerUse,
+  type Passing,
+  passingOf,
+  twoWireGates,
+  usesNeeded,
+} from './two-wire.ts';
 
 export function toNative(
   operations: readonly Operation[],
@@ -161,25 +166,6 @@ function swapped(matrix: Float64Array): Float64Array {
   return out;
 }
 
-/** Axes of rotations that pass an entangler on its first and second wire, with the sign they have after it. */
-type Passing = ({ axis: Axis; sign: 1 | -1 } | null)[];
-
-function passingOf(set: NativeSet): Passing {
-  const { entangler } = set;
-  const e = entanglerMatrix(entangler, 0.7);
-  return [0, 1].map((side) => {
-    for (const axis of ['z', 'x', 'y'] as const) {
-      const p = PAULI[axis.toUpperCase() as 'X' | 'Y' | 'Z'];
-      const wide = side === 0 ? kron(p, PAULI.I, 2, 2) : kron(PAULI.I, p, 2, 2);
-      // e p e^dag = +-p
-      const moved = mul(e, mul(wide, adjoint(e, 4), 4), 4);
-      const overlap = wide.reduce((sum, x, k) => sum + x * moved[k]!, 0) / 4;
-      if (Math.abs(Math.abs(overlap) - 1) < 1e-12) return { axis, sign: overlap > 0 ? 1 : -1 };
-    }
-    return null;
-  });
-}
-
 /** Writes operations in order; single-wire gates are gathered in runs and written last, all of a wire together. */
 class NativeWriter {
   private readonly out: (Operation | { wire: number; run: number })[] = [];
@@ -194,7 +180,7 @@ class NativeWriter {
     this.runs = Array.from({ length: wires }, () => []);
     this.set = set;
     this.use = use;
-    this.passing = passingOf(set);
+    this.passing = passingOf(set.entangler);
   }
 
   add(operation: Operation): void {

@@ -21,6 +21,7 @@ import { adjoint, identity, kron, mul } from '../numeric/complex-matrix.ts';
 import { hermitianEigen } from '../numeric/hermitian-eigen.ts';
 import type { Entangler } from '../reshape/template.ts';
 import { entanglerMatrix } from '../reshape/template.ts';
+import type { Axis } from './axis-angles.ts';
 import { type Canonical, canonical, cxCount, WALL_TOLERANCE } from './canonical.ts';
 import { fittedCore } from './fitted-pair.ts';
 
@@ -71,6 +72,24 @@ export function anglesEach(entangler: Entangler): number {
   });
   const rank = hermitianEigen(gram, 6).values.filter((x) => x > 1e-9).length;
   return rank + (entangler.angle === 'free' ? 1 : 0);
+}
+
+/** Axes of rotations that pass an entangler on its first and second wire, with the sign they have after it. */
+export type Passing = readonly ({ axis: Axis; sign: 1 | -1 } | null)[];
+
+export function passingOf(entangler: Entangler): Passing {
+  const e = entanglerMatrix(entangler, 0.7);
+  return [0, 1].map((side) => {
+    for (const axis of ['z', 'x', 'y'] as const) {
+      const p = PAULI[axis.toUpperCase() as 'X' | 'Y' | 'Z'];
+      const wide = side === 0 ? kron(p, PAULI.I, 2, 2) : kron(PAULI.I, p, 2, 2);
+      // e p e^dag = +-p
+      const moved = mul(e, mul(wide, adjoint(e, 4), 4), 4);
+      const overlap = wide.reduce((sum, x, k) => sum + x * moved[k]!, 0) / 4;
+      if (Math.abs(Math.abs(overlap) - 1) < 1e-12) return { axis, sign: overlap > 0 ? 1 : -1 };
+    }
+    return null;
+  });
 }
 
 /** Fewest uses of the entangler for this gate, or undefined where this file cannot tell. */

@@ -32,7 +32,7 @@ const REACH = 20_000;
 /** On more wires only the last ones and those that come by themselves are windows: cutting takes long. */
 const ALL_SETS_WIRES_MAX = 6;
 /** Windows at or below the bound lose one entangler by trial only in circuits with at most this many entanglers. */
-const TRIAL_ENTANGLERS_MAX = 150;
+const TRIAL_ENTANGLERS_MAX = 60;
 
 export type WindowSettings = {
   use: EntanglerUse;
@@ -72,7 +72,10 @@ export async function refitWindows(
       const items = cutWindows(operations, size, sets[at]!);
       const windows = items.flatMap(({ window }) => (window ? [window] : []));
       const label = `${size}/${at}/${improved}`;
-      const count = await refitAll(windows, size, entanglersIn(operations), settings, label);
+      // by trial only once a round: a failure costs as many fits as there are entanglers
+      const isTrial = size === 3 && sets[at] === null;
+      const total = entanglersIn(operations);
+      const count = await refitAll(windows, size, total, settings, label, isTrial);
       improved += count;
       idle = count > 0 ? 0 : idle + 1;
       operations = items.flatMap(({ operation, window }) =>
@@ -172,6 +175,7 @@ async function refitAll(
   total: number,
   settings: WindowSettings,
   label: string,
+  isTrial: boolean,
 ): Promise<number> {
   const { use, enoughFor, control } = settings;
   let improved = 0;
@@ -182,7 +186,7 @@ async function refitAll(
     if (window.wires.length === 2) {
       if (rewritePair(window, use)) improved++;
     } else if (count > enoughFor(window.wires.length)) long.push(window);
-    else if (count > 1 && size === 3 && total <= TRIAL_ENTANGLERS_MAX) short.push(window);
+    else if (count > 2 && isTrial && total <= TRIAL_ENTANGLERS_MAX) short.push(window);
   }
   const candidates = long;
   for (let round = 0; round < STARTS && candidates.length > 0; round++) {

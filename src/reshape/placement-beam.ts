@@ -156,12 +156,12 @@ export async function descend(found: Placement, settings: BeamSettings): Promise
  */
 export async function shorten(
   found: Placement,
-  settings: FitSettings & { links?: readonly Pair[] },
+  settings: FitSettings & { links?: readonly Pair[]; from?: number },
 ): Promise<Placement> {
   const { tolerance, control, label, links } = settings;
   let best = found;
   // removals go round the circuit, so that one place is not tried again and again
-  let from = 0;
+  let from = settings.from ?? 0;
   while (best.pairs.length > 0 && !control.stopped()) {
     const count = best.pairs.length;
     control.report({ stage: `taking one of ${count} entanglers out of ${label}` });
@@ -261,12 +261,12 @@ function allPlacements(
 
 /** Fits placements, from the angles given or from random starts; nearest first, ties in list order. */
 export async function fitPlacements(
-  list: readonly { pairs: readonly Pair[]; start: Float64Array | null }[],
+  list: readonly { pairs: readonly Pair[]; start: Float64Array | null; isExact?: boolean }[],
   settings: FitSettings,
 ): Promise<Placement[]> {
   const { label, target, templateOf, tolerance, seed, optimiser, runJobs, control } = settings;
   const { stallIterations } = settings;
-  const jobs = list.map(({ pairs, start }, k): FitJob => {
+  const jobs = list.map(({ pairs, start, isExact }, k): FitJob => {
     const template = templateOf(pairs);
     const warm = start && extended(start, angleCount(template));
     return {
@@ -275,7 +275,7 @@ export async function fitPlacements(
       seed,
       template,
       target,
-      ...(warm ? { start: warm, perturbation: PERTURBATION } : {}),
+      ...(warm ? { start: warm, perturbation: isExact ? 0 : PERTURBATION } : {}),
       optimiser,
       goal: GOAL,
       iterationsMax: ITERATIONS_MAX,

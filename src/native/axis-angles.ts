@@ -1,0 +1,50 @@
+/**
+ * Takes a single-wire gate apart in rotations about any two axes.
+ *
+ * Shape: u is 2 x 2, planar, unitary; u = e^{ia} Rp(b) Rq(t) Rp(c) for the outer axis p and the inner axis q.
+ * Method: a turn of the frame that carries (q, p) to (y, z) leaves the numbers of the quaternion in another order, one with a
+ * sign; there the angles are those of `euler.ts`.
+ */
+import { eulerAngles } from './euler.ts';
+
+export type Axis = 'x' | 'y' | 'z';
+
+/** [c, t, b], in order of time. */
+export function axisAngles(u: Float64Array, outer: Axis, inner: Axis): [number, number, number] {
+  const [q0, x, y, z] = quaternion(u);
+  const parts = { x, y, z };
+  const third = (['x', 'y', 'z'] as const).find((axis) => axis !== outer && axis !== inner)!; // two axes of three are taken
+  // (third, inner, outer) is right-handed or its third part changes sign
+  const isRight = ['xyz', 'yzx', 'zxy'].includes(third + inner + outer);
+  const a = isRight ? parts[third] : -parts[third];
+  const [b, c] = [parts[inner], parts[outer]];
+  const turned = Float64Array.from([q0, -b, b, q0, -c, -a, -a, c]);
+  const { t, f, l } = eulerAngles(turned);
+  return [l, t, f];
+}
+
+/** exp(-i angle P / 2). */
+export function rotationMatrix(axis: Axis, angle: number): Float64Array {
+  const [c, s] = [Math.cos(angle / 2), Math.sin(angle / 2)];
+  switch (axis) {
+    case 'x':
+      return Float64Array.from([c, 0, 0, c, 0, -s, -s, 0]);
+    case 'y':
+      return Float64Array.from([c, -s, s, c, 0, 0, 0, 0]);
+    case 'z':
+      return Float64Array.from([c, 0, 0, c, -s, 0, 0, s]);
+  }
+}
+
+/** u = e^{ia} (q0 - i (qx X + qy Y + qz Z)). */
+export function quaternion(u: Float64Array): [number, number, number, number] {
+  const { t, f, l } = eulerAngles(u);
+  const [c, s] = [Math.cos(t / 2), Math.sin(t / 2)];
+  const [sum, difference] = [(f + l) / 2, (f - l) / 2];
+  return [
+    c * Math.cos(sum),
+    -s * Math.sin(difference),
+    s * Math.cos(difference),
+    c * Math.sin(sum),
+  ];
+}
