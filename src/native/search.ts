@@ -74,6 +74,9 @@ const DESCENT_COUNT_MAX = 24;
 /** So many of the shortest ends are gone on from with moves. */
 const ENDS_MAX = 2;
 const GENERIC_STARTS = 12;
+/** Few entanglers are quick to fit, and which placement does is then a matter of luck. */
+const QUICK_COUNT_MAX = 13;
+const QUICK_STARTS = 48;
 /** On five wires a fit takes a minute: a few entanglers to spare make the first start do. */
 const LARGE_WIRES = 5;
 const LARGE_SPARE = 4;
@@ -141,7 +144,8 @@ export class Search {
       return this.answer(null);
     }
     const isLarge = this.wanted.wires >= LARGE_WIRES && this.generic + LARGE_SPARE <= entanglersMax;
-    const starts = isLarge ? LARGE_STARTS : GENERIC_STARTS;
+    const isQuick = this.generic <= QUICK_COUNT_MAX;
+    const starts = isLarge ? LARGE_STARTS : isQuick ? QUICK_STARTS : GENERIC_STARTS;
     for (let spare = isLarge ? LARGE_SPARE : 0; spare <= 2 * LARGE_SPARE; spare++) {
       if (this.options.control.stopped() || this.generic + spare > entanglersMax) break;
       if (!isLarge && spare > LARGE_SPARE) break;

@@ -7,10 +7,13 @@ import {
   emptyCircuit,
   type GateOperation,
   gate,
+  unitaryGate,
 } from '../../src/circuit/circuit.ts';
 import { circuitUnitary } from '../../src/circuit/unitary.ts';
+import { freeRunning } from '../../src/control.ts';
 import { jobTable } from '../../src/job-table.ts';
 import { inProcess } from '../../src/jobs.ts';
+import { shannonCount } from '../../src/native/shannon.ts';
 import { dimensionBound } from '../../src/native/wanted.ts';
 import { hilbertSchmidtDistance } from '../../src/numeric/distance.ts';
 import { random } from '../../src/numeric/random.ts';
@@ -95,6 +98,115 @@ describe('whole unitaries', () => {
     ];
     const target = { ...emptyCircuit(3), operations };
     expect((await buildTarget(target, { runJobs })).report.entanglers.used).toBe(2);
+  });
+});
+
+describe('structure of bare matrices', () => {
+  const unitary = (operations: readonly GateOperation[], wires: number): Circuit =>
+    circuitOfUnitary(circuitUnitary({ ...emptyCircuit(wires), operations }), wires, 'target');
+  const draw = random(8, 'structured');
+  const haar = (n: number, wires: number[]): GateOperation =>
+    unitaryGate(haarUnitary(2 ** n, draw), wires);
+  const shift = (n: number): Circuit =>
+    unitary(
+      Array.from({ length: n - 1 }, (_, k) => gate('swap', [k, k + 1])),
+      n,
+    );
+
+  test.each([
+    // two Haar pairs, three CX each (Shende, Bullock, Markov, PRA 70, 012310 (2004))
+    [
+      'factors',
+      unitary([haar(2, [0, 3]), haar(2, [1, 2])], 4),
+      6,
+      'a product of factors on 0,3 | 1,2',
+    ],
+    [
+      'a factor of three wires',
+      unitary([haar(3, [0, 2, 4]), haar(2, [3, 1])], 5),
+      17,
+      'a product of factors on 0,2,4 | 1,3',
+    ],
+    // 3 (n - 1): arXiv:2408.07898
+    ['a cyclic shift', shift(4), 9, 'a permutation of basis states, up to phases'],
+    ['a cyclic shift', shift(6), 15, 'a permutation of basis states, up to phases'],
+    [
+      'a controlled single-wire gate',
+      unitary([{ ...haar(1, [3, 0]), controls: [true] }], 4),
+      2,
+      'a product of factors on 0,3 | 1 | 2',
+    ],
+    // phases on products of qubits: Bullock, Markov, QIC 4, 27 (2004)
+    [
+      'a diagonal',
+      unitary(
+        [
+          gate('cp', [0, 1], 0.3),
+          gate('rzz', [1, 4], 0.2),
+          gate('rzz', [4, 2], 1),
+          gate('rzz', [3, 2], 1),
+        ],
+        5,
+      ),
+      8,
+      'diagonal',
+    ],
+    [
+      'one control of two gates',
+      unitary(
+        [
+          { ...haar(1, [2, 0]), controls: [true] },
+          { ...haar(1, [2, 1]), controls: [true] },
+          haar(1, [2]),
+          haar(1, [3]),
+          gate('cz', [2, 3]),
+        ],
+        4,
+      ),
+      5,
+      'selects what happens to the others',
+    ],
+  ] as [string, Circuit, number, string][])('%s', async (_, target, count, note) => {
+    const { report, circuit } = await buildTarget(target, { runJobs });
+    expect(report.verdict).toBe('built');
+    expect(report.entanglers.used).toBeLessThanOrEqual(count);
+    expect(report.notes.join()).toContain(note);
+    const { distance } = hilbertSchmidtDistance(circuitUnitary(target), circuitUnitary(circuit));
+    expect(distance).toBeLessThan(1e-20);
+  });
+});
+
+describe('more wires', () => {
+  test('6 wires: shorter than the decomposition, and exact', async () => {
+    const target = circuitOfUnitary(haarUnitary(64, random(6)), 6, 'haar');
+    const before = shannonCount(6);
+    // enough for a part of the windows
+    let asked = 0;
+    const control = { ...freeRunning, stopped: () => ++asked > 400 };
+    const { report, circuit } = await buildTarget(target, { runJobs, control });
+    expect(report.verdict).toBe('built');
+    expect(report.notes.join()).toContain('stopped before every window was tried');
+    expect(report.entanglers.used).toBeLessThanOrEqual(before);
+    const { distance } = hilbertSchmidtDistance(circuitUnitary(target), circuitUnitary(circuit));
+    expect(distance).toBeLessThan(1e-20);
+  });
+
+  test('on a line every entangler is on a link', async () => {
+    const links = [0, 1, 2, 3, 4].map((k): [number, number] => [k, k + 1]);
+    const operations = [gate('ccx', [0, 3, 5]), gate('cp', [1, 4], 0.7)];
+    const target = circuitOfUnitary(circuitUnitary({ ...emptyCircuit(6), operations }), 6, 'far');
+    const { report, circuit } = await buildTarget(target, { runJobs, links });
+    expect(report.verdict).toBe('built');
+    for (const [a, b] of pairsOf(circuit)) expect(Math.abs(a! - b!)).toBe(1);
+    const { distance } = hilbertSchmidtDistance(circuitUnitary(target), circuitUnitary(circuit));
+    expect(distance).toBeLessThan(1e-20);
+  });
+
+  test('fewer entanglers than an exact decomposition has are no result', async () => {
+    const target = circuitOfUnitary(haarUnitary(64, random(6)), 6, 'haar');
+    const control = { ...freeRunning, stopped: () => true };
+    const { report } = await buildTarget(target, { runJobs, control, entanglers: 10 });
+    expect(report.verdict).toBe('undecided');
   });
 });
 
