@@ -11,6 +11,8 @@ import { inProcess } from '../jobs.ts';
 
 /** After this long a stopped command is ended even when it does not answer. */
 const GRACE_MS = 900;
+/** The same at a time limit, where nobody waits for the prompt: writing out what is there may take a while. */
+const LIMIT_GRACE_MS = 6000;
 
 export type Ended = { result: CommandResult | null; isInterrupted: boolean; isTimedOut: boolean };
 
@@ -26,9 +28,9 @@ export async function runToEnd(
 ): Promise<Ended> {
   let isInterrupted = false;
   let isTimedOut = false;
-  let giveUp: () => void = () => {};
+  let giveUp: (afterMs: number) => void = () => {};
   const gaveUp = new Promise<null>((resolve) => {
-    giveUp = () => setTimeout(() => resolve(null), GRACE_MS).unref();
+    giveUp = (afterMs) => setTimeout(() => resolve(null), afterMs).unref();
   });
   const control: Control = {
     report: onProgress,
@@ -39,7 +41,7 @@ export async function runToEnd(
     // a second time means now
     if (isInterrupted) process.exit(130);
     isInterrupted = true;
-    giveUp();
+    giveUp(GRACE_MS);
   };
   process.on('SIGINT', onSignal);
   process.on('SIGTERM', onSignal);
@@ -48,7 +50,7 @@ export async function runToEnd(
       ? undefined
       : setTimeout(() => {
           isTimedOut = true;
-          giveUp();
+          giveUp(LIMIT_GRACE_MS);
         }, timeLimitSeconds * 1000);
   const workerUrl = new URL('./worker.js', import.meta.url);
   const start = () => startNodeWorker(workerUrl);

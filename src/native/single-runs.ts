@@ -19,7 +19,7 @@ export type Run = {
   end: { kind: 'hard' | 'measure' | 'reset' } | { kind: 'pass'; axis: Axis; sign: 1 | -1 };
 };
 
-const HYPOTHESES_MAX = 4;
+const HYPOTHESES_MAX = 3;
 /** A rotation that is left to the next run by less than this is none. */
 const ANGLE_MIN = 1e-12;
 /** Parts of a quaternion below this have no phase. */
