@@ -43,6 +43,8 @@ const ZERO_ANGLE = 1e-13;
 /** With no more than this in all angles together the answer is `same`, with the distance that they make. */
 const SMALL_ANGLES = 1e-6;
 const RANDOM_INPUTS = 64;
+/** Below this sum of angles D from their variance is right to its square, relatively. */
+const SMALL_SUM = 1e-3;
 const QUARTER = Math.PI / 2;
 
 export function comparePathSums(
@@ -368,7 +370,10 @@ class PathSum {
     const terms = [...this.terms.values()];
     const worst = terms.reduce((sum, { angle }) => sum + Math.abs(angle), this.slack);
     const isIndependent = rank(terms.map(({ bits }) => bits)) === terms.length;
-    const exact = isIndependent ? oneMinusProduct(terms) : null;
+    // different parities are uncorrelated in pairs: the phases have the variance sum a^2 / 4, and D is half of it for small ones
+    const variance = terms.reduce((sum, { angle }) => sum + angle * angle, 0) / 4;
+    const nearly = worst < SMALL_SUM ? variance / 2 : null;
+    const exact = isIndependent ? oneMinusProduct(terms) : nearly;
     // at most half of all angles lies between a phase and the middle of all phases
     const bound = 2 * Math.sin(Math.min(Math.PI, worst) / 4) ** 2;
     if (worst <= SMALL_ANGLES) return { isSame: true, hilbertSchmidt: exact ?? bound, variables };

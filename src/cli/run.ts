@@ -11,8 +11,8 @@ import { inProcess } from '../jobs.ts';
 
 /** After this long a stopped command is ended even when it does not answer. */
 const GRACE_MS = 900;
-/** The same at a time limit, where nobody waits for the prompt: writing out what is there may take a while. */
-const LIMIT_GRACE_MS = 6000;
+/** The same at the time limit of a build, which has a result by then: writing it out may take a while. */
+const BUILD_GRACE_MS = 6000;
 
 export type Ended = { result: CommandResult | null; isInterrupted: boolean; isTimedOut: boolean };
 
@@ -50,7 +50,7 @@ export async function runToEnd(
       ? undefined
       : setTimeout(() => {
           isTimedOut = true;
-          giveUp(LIMIT_GRACE_MS);
+          giveUp(request.command === 'build' ? BUILD_GRACE_MS : GRACE_MS);
         }, timeLimitSeconds * 1000);
   const workerUrl = new URL('./worker.js', import.meta.url);
   const start = () => startNodeWorker(workerUrl);

@@ -144,3 +144,12 @@ describe('beyond dense size', () => {
     }
   });
 });
+
+test('angles of 4e-6 on parities that depend on each other: the same within the tolerance, as the dense road says', () => {
+  const small = 4e-6;
+  const phases = [gate('rz', [0], small), gate('rz', [1], small), gate('rzz', [0, 1], small)];
+  const { answer } = sums(block(2, phases), block(2, []))!;
+  const dense = compareCircuits(block(2, phases), block(2, []));
+  expect(dense.verdict).toBe('same');
+  expect(answer!.hilbertSchmidt! / dense.distance!.hilbertSchmidt).toBeCloseTo(1, 5);
+});

@@ -38,17 +38,22 @@ function turned({ operations, ...rest }: Circuit): Circuit {
   };
 }
 
-/** Overlapping gates without a form of their own on four wires each, as one matrix or as a product on three and three. */
+/** Gates without a form of their own on seven wires each, more than pieces are looked for on: as one matrix, or as a product on four and four. */
 function dense(isSplit: boolean): Circuit {
-  const haar = (k: number, part: string): Float64Array => haarUnitary(8, random(k, part));
-  const operations = [0, 3, 6, 9].flatMap((first, k): GateOperation[] => {
+  const haar = (k: number, part: string): Float64Array => haarUnitary(16, random(k, part));
+  const operations = [0, 7].flatMap((first, k): GateOperation[] => {
     const [left, right] = [
-      unitaryGate(haar(k, 'left'), [first, first + 1, first + 2]),
-      unitaryGate(haar(k, 'right'), [first + 1, first + 2, first + 3]),
+      unitaryGate(haar(k, 'left'), [first, first + 1, first + 2, first + 3]),
+      unitaryGate(haar(k, 'right'), [first + 3, first + 4, first + 5, first + 6]),
     ];
     if (isSplit) return [left, right];
-    const both = circuitUnitary({ ...emptyCircuit(4), operations: [left, right].map((g) => ({ ...g, wires: g.wires.map((w) => w - first) })) }); // biome-ignore format: one matrix
-    return [unitaryGate(both, [first, first + 1, first + 2, first + 3])];
+    const both = circuitUnitary({ ...emptyCircuit(7), operations: [left, right].map((g) => ({ ...g, wires: g.wires.map((w) => w - first) })) }); // biome-ignore format: one matrix
+    return [
+      unitaryGate(
+        both,
+        Array.from({ length: 7 }, (_, wire) => first + wire),
+      ),
+    ];
   });
   return { ...emptyCircuit(14), operations };
 }
