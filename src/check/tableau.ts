@@ -37,15 +37,17 @@ export function compareTableaus(
   const b = linesOf(rewritten, n, isAnnotated(rewritten), true);
   if (!b?.gates.every(actionOf)) return null;
   const unwritten = unwrittenOutputs(original, contract);
-  const left = observedGroup(a, contract, unwritten, partner.map((pair) => pair.original)); // biome-ignore format: two calls alike
-  const right = observedGroup(b, contract, unwritten, partner.map((pair) => pair.rewritten)); // biome-ignore format: two calls alike
+  // a bit that neither circuit writes is 0 in both; in only one of them it is for other roads
+  const written = partner.filter((pair) => a.lineOfBit[pair.original]! >= 0 || b.lineOfBit[pair.rewritten]! >= 0); // biome-ignore format: one list
+  const left = observedGroup(a, contract, unwritten, written.map((pair) => pair.original)); // biome-ignore format: two calls alike
+  const right = observedGroup(b, contract, unwritten, written.map((pair) => pair.rewritten)); // biome-ignore format: two calls alike
   if (!left || !right) return null;
   const generators = left.rows.length;
   const odd = lightest(left.rows.filter((row) => signIn(right, row) !== row.sign));
   const other = lightest(right.rows.filter((row) => signIn(left, row) !== row.sign));
   if (!odd && !other) return { isSame: true, generators, witness: null };
   const isOriginal = odd !== null && (other === null || weight(odd) <= weight(other));
-  const names = columnNames(original, contract, partner);
+  const names = columnNames(original, contract, written);
   return {
     isSame: false,
     generators,

@@ -125,6 +125,14 @@ describe('any size', () => {
     expect(Math.abs(p - q)).toBeGreaterThan(0.4);
   });
 
+  test('bits that are never written are no hindrance', () => {
+    const draw = random(3, 'bits');
+    const list = [...cliffords(40, 200, draw), { kind: 'measure', wire: 3, bit: 5 } as const];
+    const a = { ...emptyCircuit(40, 9), operations: list };
+    const b = { ...a, operations: [gate('h', [7]), gate('h', [7]), ...list] };
+    expect(tableau(a, b)).toMatchObject({ isSame: true });
+  });
+
   test('a gate that is no Clifford gate is left to other roads', () => {
     const a = { ...emptyCircuit(2), operations: [gate('t', [0])] };
     expect(tableau(a, a)).toBeNull();
