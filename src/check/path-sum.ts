@@ -43,6 +43,10 @@ const ZERO_ANGLE = 1e-13;
 /** With no more than this in all angles together the answer is `same`, with the distance that they make. */
 const SMALL_ANGLES = 1e-6;
 const RANDOM_INPUTS = 64;
+/** All inputs are gone through on up to this many lines. */
+const INPUT_LINES_MAX = 16;
+/** An input that comes back more often than this may mean a D of any size. */
+const AGAIN_MAX = 1 - 1e-4;
 /** Below this sum of angles D from their variance is right to its square, relatively. */
 const SMALL_SUM = 1e-3;
 const QUARTER = Math.PI / 2;
@@ -373,14 +377,39 @@ class PathSum {
     // different parities are uncorrelated in pairs: the phases have the variance sum a^2 / 4, and D is half of it for small ones
     const variance = terms.reduce((sum, { angle }) => sum + angle * angle, 0) / 4;
     const nearly = worst < SMALL_SUM ? variance / 2 : null;
-    const exact = isIndependent ? oneMinusProduct(terms) : nearly;
+    const exact = isIndependent ? oneMinusProduct(terms) : (nearly ?? this.distanceByInputs(terms));
     // at most half of all angles lies between a phase and the middle of all phases
     const bound = 2 * Math.sin(Math.min(Math.PI, worst) / 4) ** 2;
     if (worst <= SMALL_ANGLES) return { isSame: true, hilbertSchmidt: exact ?? bound, variables };
     const found = this.turnedInput();
-    if (found) return { isSame: false, hilbertSchmidt: exact, variables, ...found };
+    if (found) {
+      // without D a small difference cannot be held against a tolerance
+      if (exact === null && found.again > AGAIN_MAX) return null;
+      return { isSame: false, hilbertSchmidt: exact, variables, ...found };
+    }
     const isNone = this.vanishes(terms);
     return isNone ? { isSame: true, hilbertSchmidt: 2 * Math.sin(this.slack / 4) ** 2, variables } : null; // biome-ignore format: one choice
+  }
+
+  /** D from the phases of all inputs, as a mean of squares; null where there are too many. */
+  private distanceByInputs(terms: readonly Term[]): number | null {
+    const used = [...new Set(terms.flatMap(({ bits }) => members(bits)))];
+    if (used.length > INPUT_LINES_MAX || terms.length * 2 ** used.length > WORK_MAX / 64)
+      return null;
+    const place = new Map(used.map((line, k) => [line, k]));
+    const sets = terms.map(({ bits }) => members(bits).reduce((mask, line) => mask | (1 << place.get(line)!), 0)); // biome-ignore format: one list
+    const phases = Float64Array.from({ length: 2 ** used.length }, (_, input) =>
+      terms.reduce((sum, { angle }, k) => sum + (parity(input & sets[k]!) ? angle : 0), 0),
+    );
+    let [re, im] = [0, 0];
+    for (const phase of phases) {
+      re += Math.cos(phase);
+      im += Math.sin(phase);
+    }
+    const middle = Math.atan2(im, re);
+    let sum = 0;
+    for (const phase of phases) sum += 2 * Math.sin((phase - middle) / 2) ** 2;
+    return sum / phases.length;
   }
 
   /** Basis states with one line in |+> that do not come back: single flips first, then random ones. */

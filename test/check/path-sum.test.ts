@@ -145,6 +145,20 @@ describe('beyond dense size', () => {
   });
 });
 
+test('a small angle beside phases that make nothing together', () => {
+  // ccz twice in different words: its parities with pi/4 and with -pi/4, which agree for every input
+  const ccz = gate('ccz', [0, 1, 2]);
+  const a = block(3, [ccz, gate('rz', [0], 4e-6)]);
+  const words = [[0], [1], [2]].map((on) => gate('p', on, -Math.PI / 4));
+  const pairs = [[0, 1], [1, 2], [0, 2]].map(([x, y]) => [gate('cx', [x!, y!]), gate('p', [y!], Math.PI / 4), gate('cx', [x!, y!])]); // biome-ignore format: one list
+  const all = [gate('cx', [0, 2]), gate('cx', [1, 2]), gate('p', [2], -Math.PI / 4), gate('cx', [1, 2]), gate('cx', [0, 2])]; // biome-ignore format: one list
+  const b = block(3, [...words, ...pairs.flat(), ...all]);
+  const { answer } = sums(a, b)!;
+  const dense = compareCircuits(a, b);
+  expect(dense.verdict).toBe('same');
+  expect(answer!.hilbertSchmidt! / dense.distance!.hilbertSchmidt).toBeCloseTo(1, 4);
+});
+
 test('angles of 4e-6 on parities that depend on each other: the same within the tolerance, as the dense road says', () => {
   const small = 4e-6;
   const phases = [gate('rz', [0], small), gate('rz', [1], small), gate('rzz', [0, 1], small)];
