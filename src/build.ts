@@ -6,6 +6,7 @@
  * dimension for generic targets, or from few entanglers for special ones (`native/synthesise.ts`).
  * The distance in the report is computed anew from the gates that are returned.
  */
+
 import {
   type Circuit,
   emptyCircuit,
@@ -20,6 +21,7 @@ import { type Control, freeRunning } from './control.ts';
 import { InputError } from './input-error.ts';
 import type { RunJobs } from './jobs.ts';
 import { canonical, makhlinInvariants } from './native/canonical.ts';
+import { isConnected } from './native/links.ts';
 import { type CustomEntangler, type NativeSet, nativeSetOf } from './native/native-set.ts';
 import { synthesise } from './native/synthesise.ts';
 import { toNative } from './native/to-native.ts';
@@ -251,15 +253,7 @@ function checkedLinks(
   const all: [number, number][] = [];
   if (!links) for (let a = 0; a < wires; a++) for (let b = a + 1; b < wires; b++) all.push([a, b]);
   const given = links?.filter(([a, b]) => a < wires && b < wires) ?? all;
-  const reached = new Set([0]);
-  for (let before = 0; reached.size > before; ) {
-    before = reached.size;
-    for (const [a, b] of given) {
-      if (reached.has(a)) reached.add(b);
-      else if (reached.has(b)) reached.add(a);
-    }
-  }
-  if (reached.size < wires) {
+  if (!isConnected(given, wires)) {
     throw new InputError({
       code: 'not-connected',
       message: `expected links that connect all ${wires} wires, got ${

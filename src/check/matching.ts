@@ -6,13 +6,7 @@
  * its order (bits). The wires of a narrowed circuit are matched by its annotations; only its bits can be mapped.
  * Fails: InputError for unknown names, sizes that differ, a wire and a bit, and for one thing named twice.
  */
-import {
-  bitName,
-  type Circuit,
-  type Operation,
-  type Register,
-  wireName,
-} from '../circuit/circuit.ts';
+import { bitName, type Circuit, moved, type Register, wireName } from '../circuit/circuit.ts';
 import { InputError } from '../input-error.ts';
 import { isAnnotated } from './annotations.ts';
 
@@ -75,25 +69,11 @@ function withWires(circuit: Circuit, pairs: ReadonlyMap<number, number>): Circui
   if (to.size < circuit.wires || to.has(-1)) {
     throw problem(`expected wires of the original below ${circuit.wires}, the number of the rewritten circuit's`); // biome-ignore format: one message
   }
-  const moved = (wire: number): number => to.get(wire)!; // every wire has a place
   return {
     ...circuit,
     qubitRegisters: from.map((wire, k): Register => ({ name: wireName(circuit, wire), first: k, size: 1, scalar: true })), // biome-ignore format: one list
-    operations: circuit.operations.map((operation) => onWires(operation, moved)),
+    operations: circuit.operations.map((operation) => moved(operation, (wire) => to.get(wire)!)), // every wire has a place
   };
-}
-
-function onWires(operation: Operation, moved: (wire: number) => number): Operation {
-  switch (operation.kind) {
-    case 'gate':
-    case 'barrier':
-      return { ...operation, wires: operation.wires.map(moved) };
-    case 'measure':
-    case 'reset':
-      return { ...operation, wire: moved(operation.wire) };
-    case 'assign':
-      return operation;
-  }
 }
 
 function withBits(

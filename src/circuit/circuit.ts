@@ -175,6 +175,31 @@ export function operationWires(operation: Operation): readonly number[] {
   }
 }
 
+/** The same operation with every wire put elsewhere. */
+export function moved(operation: Operation, place: (wire: number) => number): Operation {
+  switch (operation.kind) {
+    case 'gate':
+    case 'barrier':
+      return { ...operation, wires: operation.wires.map(place) };
+    case 'measure':
+    case 'reset':
+      return { ...operation, wire: place(operation.wire) };
+    case 'assign':
+      return operation;
+  }
+}
+
+/** Gates on wires 0 .. k-1 as gates on the wires given. */
+export function onWires(
+  operations: readonly GateOperation[],
+  wires: readonly number[],
+): GateOperation[] {
+  return operations.map((operation) => ({
+    ...operation,
+    wires: operation.wires.map((wire) => wires[wire]!),
+  }));
+}
+
 /** The bits a boolean expression reads, each once, ascending. */
 export function bitsOf(expression: BitExpression | undefined): number[] {
   const found = new Set<number>();

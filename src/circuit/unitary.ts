@@ -347,3 +347,21 @@ export function circuitUnitary(circuit: Circuit): Float64Array {
   }
   return out;
 }
+
+/** u with its wires in another order: wire order[k] of u becomes wire k. */
+export function withWireOrder(u: Float64Array, order: readonly number[]): Float64Array {
+  const n = order.length;
+  const d = 2 ** n;
+  const from = Int32Array.from({ length: d }, (_, state) =>
+    order.reduce((sum, wire, k) => sum + ((state >> (n - 1 - k)) & 1) * 2 ** (n - 1 - wire), 0),
+  );
+  const out = new Float64Array(u.length);
+  for (let i = 0; i < d; i++) {
+    for (let j = 0; j < d; j++) {
+      const at = from[i]! * d + from[j]!;
+      out[i * d + j] = u[at]!;
+      out[d * d + i * d + j] = u[d * d + at]!;
+    }
+  }
+  return out;
+}

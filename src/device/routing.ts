@@ -12,7 +12,7 @@
  * `too-many-wires` when the circuit is larger than the device; gates on three wires or more are refused.
  * Cost: about (gates) x (links) x (lookahead).
  */
-import { type Circuit, gate, type Operation, operationWires } from '../circuit/circuit.ts';
+import { type Circuit, gate, moved, type Operation, operationWires } from '../circuit/circuit.ts';
 import { dependencyGraph } from '../circuit/graph.ts';
 import { InputError } from '../input-error.ts';
 import type { Device } from './device.ts';
@@ -192,7 +192,7 @@ class Routing {
         continue;
       }
       any = true;
-      this.out.push(moved(this.operations[k]!, this.place));
+      this.out.push(moved(this.operations[k]!, (wire) => this.place[wire]!));
       for (const next of this.after[k]!) if (--this.waitingFor[next]! === 0) this.front.push(next);
     }
     this.front = waiting.sort((a, b) => a - b);
@@ -293,17 +293,4 @@ function notConnected(): InputError {
     code: 'not-connected',
     message: 'expected links that connect the wires of every two-wire gate, got a device in pieces',
   });
-}
-
-function moved(operation: Operation, place: readonly number[]): Operation {
-  switch (operation.kind) {
-    case 'gate':
-    case 'barrier':
-      return { ...operation, wires: operation.wires.map((wire) => place[wire]!) };
-    case 'measure':
-    case 'reset':
-      return { ...operation, wire: place[operation.wire]! };
-    case 'assign':
-      return operation;
-  }
 }

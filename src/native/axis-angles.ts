@@ -5,7 +5,7 @@
  * Method: a turn of the frame that carries (q, p) to (y, z) leaves the numbers of the quaternion in another order, one with a
  * sign; there the angles are those of `euler.ts`.
  */
-import { eulerAngles } from './euler.ts';
+import { eulerAngles, fromQuaternion, quaternion } from './euler.ts';
 
 export type Axis = 'x' | 'y' | 'z';
 
@@ -18,8 +18,7 @@ export function axisAngles(u: Float64Array, outer: Axis, inner: Axis): [number, 
   const isRight = ['xyz', 'yzx', 'zxy'].includes(third + inner + outer);
   const a = isRight ? parts[third] : -parts[third];
   const [b, c] = [parts[inner], parts[outer]];
-  const turned = Float64Array.from([q0, -b, b, q0, -c, -a, -a, c]);
-  const { t, f, l } = eulerAngles(turned);
+  const { t, f, l } = eulerAngles(fromQuaternion(q0, a, b, c));
   return [l, t, f];
 }
 
@@ -34,17 +33,4 @@ export function rotationMatrix(axis: Axis, angle: number): Float64Array {
     case 'z':
       return Float64Array.from([c, 0, 0, c, -s, 0, 0, s]);
   }
-}
-
-/** u = e^{ia} (q0 - i (qx X + qy Y + qz Z)). */
-export function quaternion(u: Float64Array): [number, number, number, number] {
-  const { t, f, l } = eulerAngles(u);
-  const [c, s] = [Math.cos(t / 2), Math.sin(t / 2)];
-  const [sum, difference] = [(f + l) / 2, (f - l) / 2];
-  return [
-    c * Math.cos(sum),
-    -s * Math.sin(difference),
-    s * Math.cos(difference),
-    c * Math.sin(sum),
-  ];
 }

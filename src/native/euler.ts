@@ -128,7 +128,7 @@ function aboutXY(u: Float64Array): OneWireGate[] {
 }
 
 /** u = e^{ia} (q0 - i (qx X + qy Y + qz Z)). */
-function quaternion(u: Float64Array): [number, number, number, number] {
+export function quaternion(u: Float64Array): [number, number, number, number] {
   const { t, f, l } = eulerAngles(u);
   const [c, s] = [Math.cos(t / 2), Math.sin(t / 2)];
   const [sum, difference] = [(f + l) / 2, (f - l) / 2];
@@ -141,6 +141,6 @@ function quaternion(u: Float64Array): [number, number, number, number] {
 }
 
 /** The matrix q0 - i (x X + y Y + z Z). */
-function fromQuaternion(q0: number, x: number, y: number, z: number): Float64Array {
+export function fromQuaternion(q0: number, x: number, y: number, z: number): Float64Array {
   return new Float64Array([q0, -y, y, q0, -z, -x, -x, z]);
 }

@@ -33,6 +33,27 @@ export function goRound(
   });
 }
 
+/** The links between these wires, renumbered in their order. */
+export function linksWithin(links: readonly Pair[], of: readonly number[]): Pair[] {
+  return links.flatMap(([a, b]): Pair[] => {
+    const [p, q] = [of.indexOf(a), of.indexOf(b)];
+    return p < 0 || q < 0 ? [] : [[p, q]];
+  });
+}
+
+/** Whether the links hold the wires 0 .. wires-1 together. */
+export function isConnected(links: readonly Pair[], wires: number): boolean {
+  const reached = new Set([0]);
+  for (let before = 0; reached.size > before; ) {
+    before = reached.size;
+    for (const [a, b] of links) {
+      if (reached.has(a)) reached.add(b);
+      else if (reached.has(b)) reached.add(a);
+    }
+  }
+  return reached.size >= wires;
+}
+
 /** CX from the first to the last wire of the path. */
 function ladder(path: readonly number[]): GateOperation[] {
   const steps = path.slice(1).map((wire, k) => gate('cx', [path[k]!, wire]));

@@ -9,7 +9,7 @@
  * tried, else `found`.
  * Every batch is decided in list order, so the answer does not depend on the number of workers.
  */
-import type { GateOperation } from '../circuit/circuit.ts';
+import { type GateOperation, onWires } from '../circuit/circuit.ts';
 import type { Control } from '../control.ts';
 import type { RunJobs } from '../jobs.ts';
 import { random } from '../numeric/random.ts';
@@ -309,9 +309,8 @@ export class Search {
     // counting dimensions bounds generic targets only
     const isGeneric = meetsBound && !this.looksSpecial();
     const bound = isGeneric ? this.generic : found && this.isExhausted ? used : 0;
-    const operations = templateOperations(this.templateOf(best.pairs), best.angles).map(
-      (operation) => ({ ...operation, wires: operation.wires.map((w) => this.order[w]!) }),
-    );
+    const made = templateOperations(this.templateOf(best.pairs), best.angles);
+    const operations = onWires(made, this.order);
     return {
       operations,
       bound,

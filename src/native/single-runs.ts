@@ -10,8 +10,8 @@
  * Result: for every run its gates; leaving nothing to the next run is one of the choices, and wins ties.
  */
 import { mul } from '../numeric/complex-matrix.ts';
-import { type Axis, quaternion, rotationMatrix } from './axis-angles.ts';
-import { type OneWireGate, type OneWireSet, oneWireGates, wrapped } from './euler.ts';
+import { type Axis, rotationMatrix } from './axis-angles.ts';
+import { type OneWireGate, type OneWireSet, oneWireGates, quaternion, wrapped } from './euler.ts';
 
 export type Run = {
   matrix: Float64Array | null;

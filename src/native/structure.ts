@@ -10,6 +10,7 @@
  * What is found is confirmed entry by entry to `TOLERANCE`.
  * Cost: 2^(n-1) * 4^n at most for the factors, n * 4^n for the rest.
  */
+import { withWireOrder } from '../circuit/unitary.ts';
 import { adjoint, kron, mul } from '../numeric/complex-matrix.ts';
 import { quartersOf } from '../numeric/cosine-sine.ts';
 import { hermitianEigen } from '../numeric/hermitian-eigen.ts';
@@ -22,24 +23,6 @@ const TOLERANCE = 1e-12;
 const WEIGHT_TOLERANCE = 1e-7;
 
 export type Factor = { wires: number[]; matrix: Float64Array };
-
-/** u with its wires in another order: wire order[k] of u becomes wire k. */
-export function withWireOrder(u: Float64Array, order: readonly number[]): Float64Array {
-  const n = order.length;
-  const d = 2 ** n;
-  const from = Int32Array.from({ length: d }, (_, state) =>
-    order.reduce((sum, wire, k) => sum + ((state >> (n - 1 - k)) & 1) * 2 ** (n - 1 - wire), 0),
-  );
-  const out = new Float64Array(u.length);
-  for (let i = 0; i < d; i++) {
-    for (let j = 0; j < d; j++) {
-      const at = from[i]! * d + from[j]!;
-      out[i * d + j] = u[at]!;
-      out[d * d + i * d + j] = u[d * d + at]!;
-    }
-  }
-  return out;
-}
 
 /** The finest factors of u; one factor with all wires when there are none. */
 export function factorsOf(u: Float64Array, wires: number): Factor[] {

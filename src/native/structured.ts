@@ -12,7 +12,7 @@
  * The parts are built by `build`, which comes back here for those with structure of their own.
  * Result: the gates and a sentence that names the structure; undefined where there is none.
  */
-import { type GateOperation, gate, unitaryGate } from '../circuit/circuit.ts';
+import { type GateOperation, gate, onWires, unitaryGate } from '../circuit/circuit.ts';
 import { adjoint, identity, mul } from '../numeric/complex-matrix.ts';
 import { fromQuarters } from '../numeric/cosine-sine.ts';
 import { nearestUnitary } from '../numeric/nearest-unitary.ts';
@@ -75,13 +75,6 @@ async function built(factors: readonly Factor[], build: BuildPart): Promise<Gate
     parts.push(...onWires(await build(matrix, wires), wires));
   }
   return parts;
-}
-
-function onWires(operations: readonly GateOperation[], wires: readonly number[]): GateOperation[] {
-  return operations.map((operation) => ({
-    ...operation,
-    wires: operation.wires.map((wire) => wires[wire]!),
-  }));
 }
 
 function diagonalOf(phases: ArrayLike<number>): Float64Array {

@@ -13,7 +13,7 @@ import { type GateOperation, unitaryGate } from '../circuit/circuit.ts';
 import { gateMatrix } from '../circuit/unitary.ts';
 import type { Pair } from '../reshape/placement-beam.ts';
 import { decompose } from './decompose.ts';
-import { goRound } from './links.ts';
+import { goRound, isConnected, linksWithin } from './links.ts';
 import { exact, Search, type Synthesis, type SynthesisOptions } from './search.ts';
 import { shannonGates } from './shannon.ts';
 import { factorsOf } from './structure.ts';
@@ -90,18 +90,8 @@ async function exactRoad(
 
 /** The links between these wires, renumbered; all pairs when they are not connected (`goRound` sees to it). */
 function linksAmong(links: readonly Pair[], of: readonly number[]): Pair[] {
-  const inner = links.flatMap(([a, b]): Pair[] => {
-    const [p, q] = [of.indexOf(a), of.indexOf(b)];
-    return p < 0 || q < 0 ? [] : [[p, q]];
-  });
-  const reached = new Set([0]);
-  for (let round = 0; round < of.length; round++) {
-    for (const [p, q] of inner) {
-      if (reached.has(p)) reached.add(q);
-      if (reached.has(q)) reached.add(p);
-    }
-  }
-  if (reached.size === of.length) return inner;
+  const inner = linksWithin(links, of);
+  if (isConnected(inner, of.length)) return inner;
   return of.flatMap((_, a) => of.slice(a + 1).map((__, b): Pair => [a, a + 1 + b]));
 }
 

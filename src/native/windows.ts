@@ -12,7 +12,8 @@
  * Batches are decided in list order, so the answer does not depend on the number of workers; a stop from outside keeps what
  * was reached.
  */
-import { type GateOperation, unitaryGate } from '../circuit/circuit.ts';
+
+import { type GateOperation, onWires, unitaryGate } from '../circuit/circuit.ts';
 import { applyGateInto } from '../circuit/unitary.ts';
 import type { Control } from '../control.ts';
 import type { RunJobs } from '../jobs.ts';
@@ -20,6 +21,7 @@ import { identity } from '../numeric/complex-matrix.ts';
 import type { FitJob, FitResult } from '../reshape/fit-block.ts';
 import type { Pair } from '../reshape/placement-beam.ts';
 import { entanglerTemplate, type Template, templateOperations } from '../reshape/template.ts';
+import { isConnected, linksWithin } from './links.ts';
 import { type EntanglerUse, twoWireGates, usesNeeded } from './two-wire.ts';
 
 const DISTANCE_MAX = 1e-22;
@@ -237,18 +239,8 @@ function cyclicPairs(
   shift: number,
   { links }: WindowSettings,
 ): Pair[] | undefined {
-  const inner = links.flatMap(([a, b]): Pair[] => {
-    const [p, q] = [wires.indexOf(a), wires.indexOf(b)];
-    return p < 0 || q < 0 ? [] : [[p, q]];
-  });
-  const reached = new Set([0]);
-  for (let round = 0; round < wires.length; round++) {
-    for (const [p, q] of inner) {
-      if (reached.has(p)) reached.add(q);
-      if (reached.has(q)) reached.add(p);
-    }
-  }
-  if (reached.size < wires.length) return undefined;
+  const inner = linksWithin(links, wires);
+  if (!isConnected(inner, wires.length)) return undefined;
   return Array.from({ length: count }, (_, k) => inner[(k + shift) % inner.length]!);
 }
 
@@ -296,13 +288,6 @@ function matrixOf({ wires, members }: Window): Float64Array {
     applyGateInto(out, own, wires.length, d);
   }
   return out;
-}
-
-function onWires(operations: readonly GateOperation[], wires: readonly number[]): GateOperation[] {
-  return operations.map((operation) => ({
-    ...operation,
-    wires: operation.wires.map((wire) => wires[wire]!),
-  }));
 }
 
 /** Every gate on two wires in uses of the entangler; undefined when its class has no closed form. */

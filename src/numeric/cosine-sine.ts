@@ -12,7 +12,7 @@
  * Cost: two singular value decompositions and six products of size m. Fails: never for unitary input.
  */
 import { adjoint, mul } from './complex-matrix.ts';
-import { completeColumns, svd } from './svd.ts';
+import { completeColumns, removeColumn, svd } from './svd.ts';
 
 export type CosineSine = {
   l1: Float64Array;
@@ -162,20 +162,7 @@ function makeOrthogonal(a: Float64Array, m: number, place: number): number {
   const im = m * m;
   let length = 0;
   for (let round = 0; round < 3; round++) {
-    for (let k = 0; k < place; k++) {
-      let [re, imag] = [0, 0];
-      for (let i = 0; i < m; i++) {
-        const [x, y] = [a[i * m + k]!, a[im + i * m + k]!];
-        const [p, q] = [a[i * m + place]!, a[im + i * m + place]!];
-        re += x * p + y * q;
-        imag += x * q - y * p;
-      }
-      for (let i = 0; i < m; i++) {
-        const [x, y] = [a[i * m + k]!, a[im + i * m + k]!];
-        a[i * m + place]! -= x * re - y * imag;
-        a[im + i * m + place]! -= x * imag + y * re;
-      }
-    }
+    for (let k = 0; k < place; k++) removeColumn(a, m, m, k, place);
     let square = 0;
     for (let i = 0; i < m; i++) square += a[i * m + place]! ** 2 + a[im + i * m + place]! ** 2;
     const norm = Math.sqrt(square);

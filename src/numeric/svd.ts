@@ -153,7 +153,8 @@ export function completeColumns(u: Float64Array, m: number, n: number, from: num
   }
 }
 
-function removeColumn(u: Float64Array, m: number, n: number, k: number, j: number): void {
+/** Takes out of column j its part along column k, which has length 1; u is m x n, planar. */
+export function removeColumn(u: Float64Array, m: number, n: number, k: number, j: number): void {
   const im = m * n;
   let [re, imag] = [0, 0];
   for (let i = 0; i < m; i++) {

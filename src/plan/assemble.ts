@@ -13,6 +13,7 @@ import {
   bitsRead,
   bitWritten,
   type Circuit,
+  moved,
   type Operation,
   operationWires,
   type Register,
@@ -133,7 +134,7 @@ class Assembly {
   step(event: WireEvent): void {
     if (event.kind === 'enter') this.enter(event.carrier, event.input);
     else if (event.kind === 'leave') this.leave(event.carrier, event.output);
-    else this.write(this.moved(event.operation));
+    else this.write(this.onWires(event.operation));
   }
 
   private enter(carrier: number, input: number): void {
@@ -175,23 +176,14 @@ class Assembly {
     this.write({ kind: 'measure', wire, bit, annotations: [`wiregauge.leaves ${output}`] });
   }
 
-  private moved(operation: Operation): Operation {
+  private onWires(operation: Operation): Operation {
     const place = (carrier: number): number => {
       const wire = this.wireOf.get(carrier);
       assert(wire !== undefined, () => `an operation on carrier ${carrier}, which is not there`);
       return wire;
     };
     for (const bit of bitsRead(operation)) if (bit >= this.original.bits) this.usesOut = true;
-    switch (operation.kind) {
-      case 'gate':
-      case 'barrier':
-        return { ...operation, wires: operation.wires.map(place) };
-      case 'measure':
-      case 'reset':
-        return { ...operation, wire: place(operation.wire) };
-      case 'assign':
-        return operation;
-    }
+    return moved(operation, place);
   }
 
   /** Writes an operation on physical wires and keeps the levels. */

@@ -7,7 +7,7 @@
  * To use it: `planStructure`, `planWindows`, make gates of each window, `withWindows`, and go on as with any
  * plan.
  */
-import { type GateOperation, operationWires } from '../circuit/circuit.ts';
+import { type GateOperation, moved, operationWires } from '../circuit/circuit.ts';
 import { contracted } from '../survey/contracted.ts';
 import type { Life, LifeCircuit, LifeNode } from '../survey/lives.ts';
 import { closureRelation, type OrderRules, orderGraph } from '../survey/order.ts';
@@ -163,28 +163,13 @@ function replaced(
       });
       continue;
     }
-    const moved = operation && movedTo(operation, now);
-    if (end < 0) nodes.push({ operation: moved, end });
+    const here = operation && moved(operation, (carrier) => now[carrier]!);
+    if (end < 0) nodes.push({ operation: here, end });
     else {
       const { output, rule, bit } = whole.lives[end]!;
       Object.assign(lives[now[end]!]!, { output, rule, bit });
-      nodes.push({ operation: moved, end: now[end]! });
+      nodes.push({ operation: here, end: now[end]! });
     }
   }
   return { ...whole, lives, nodes };
-}
-
-function movedTo(
-  operation: NonNullable<LifeNode['operation']>,
-  now: readonly number[],
-): NonNullable<LifeNode['operation']> {
-  switch (operation.kind) {
-    case 'gate':
-      return { ...operation, wires: operation.wires.map((carrier) => now[carrier]!) };
-    case 'measure':
-    case 'reset':
-      return { ...operation, wire: now[operation.wire]! };
-    default:
-      return operation;
-  }
 }

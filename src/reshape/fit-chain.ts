@@ -9,7 +9,7 @@
  * Result: gates on carriers in order; `distance` is D between them and the chain's target, computed anew.
  */
 
-import { type GateOperation, gate, unitaryGate } from '../circuit/circuit.ts';
+import { type GateOperation, gate, onWires, unitaryGate } from '../circuit/circuit.ts';
 import { applyGateInto } from '../circuit/unitary.ts';
 import { type Control, freeRunning } from '../control.ts';
 import type { RunJobs } from '../jobs.ts';
@@ -125,7 +125,7 @@ async function fitSimpleBlocks(
       entangler,
     );
     const local = templateOperations(template, best.angles);
-    operations.push(...local.map((op) => ({ ...op, wires: op.wires.map((w) => wires[w]!) })));
+    operations.push(...onWires(local, wires));
     const { pairs, iterations, distance, status } = best;
     fits.push({
       block: b,
@@ -190,7 +190,7 @@ function placeFit(found: Found, wires: readonly number[], block: number): Fitted
   const local = templateOperations(found.template, found.angles);
   const { entanglers, iterations, distance, status } = found;
   return {
-    operations: local.map((op) => ({ ...op, wires: op.wires.map((wire) => wires[wire]!) })),
+    operations: onWires(local, wires),
     fit: { block, wires: [...wires], entanglers, iterations, distance, status },
   };
 }

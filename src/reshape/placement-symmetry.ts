@@ -9,6 +9,7 @@
  * Result: only symmetries that were reached to `OVERLAP_GAP`; the identity is not listed.
  * Cost: about 2 n! * starts * sweeps * 2 n products of size 2^n. Meant for n = 3.
  */
+import { withWireOrder } from '../circuit/unitary.ts';
 import { adjoint, identity, kron, mul } from '../numeric/complex-matrix.ts';
 import { random } from '../numeric/random.ts';
 import { haarUnitary, polarFactor } from '../numeric/svd.ts';
@@ -66,19 +67,7 @@ function keepsLinks(order: readonly number[], links: readonly Pair[]): boolean {
 
 /** u with wire k called order[k]. */
 function renumbered(u: Float64Array, order: readonly number[]): Float64Array {
-  const n = order.length;
-  const d = 2 ** n;
-  const to = Int32Array.from({ length: d }, (_, state) =>
-    order.reduce((sum, wire, k) => sum + ((state >> (n - 1 - k)) & 1) * 2 ** (n - 1 - wire), 0),
-  );
-  const out = new Float64Array(u.length);
-  for (let i = 0; i < d; i++) {
-    for (let j = 0; j < d; j++) {
-      out[to[i]! * d + to[j]!] = u[i * d + j]!;
-      out[d * d + to[i]! * d + to[j]!] = u[d * d + i * d + j]!;
-    }
-  }
-  return out;
+  return withWireOrder(u, order.map((_, wire) => order.indexOf(wire))); // biome-ignore format: one call
 }
 
 function transposed(u: Float64Array, d: number): Float64Array {

@@ -5,7 +5,7 @@
  * Windows and their orders: `plan/windows.ts`. Result: the plan of the circuit with the new gates, and the fits, their wires in
  * the numbers of the circuit's carriers; null when a window could not be fitted to `FITTED` or the work was stopped.
  */
-import type { GateOperation, Operation } from '../circuit/circuit.ts';
+import { type GateOperation, type Operation, onWires } from '../circuit/circuit.ts';
 import type { StructurePlan } from '../plan/structure-plan.ts';
 import { type Replacement, type Window, withWindows } from '../plan/windows.ts';
 import type { FitRow, WindowRow } from '../reports.ts';
@@ -41,7 +41,7 @@ export async function reshapeWindows(
       entanglers: { before: window.nodes.filter((node) => isEntangler(plan.structure.circuit.nodes[node]!.operation)).length, after: finished.filter(isEntangler).length }, // biome-ignore format: one pair
     });
     replacements.push({
-      operations: finished.map((operation): GateOperation => ({ ...operation, wires: operation.wires.map((wire) => carriers[wire]!) })), // biome-ignore format: one list
+      operations: onWires(finished, carriers),
       places: carriersOfOutputs(chain).map((carrier) => carriers[carrier]!),
     });
   }

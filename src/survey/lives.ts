@@ -11,6 +11,7 @@ import {
   bitsRead,
   type Circuit,
   type GateOperation,
+  moved,
   type Operation,
   operationWires,
 } from '../circuit/circuit.ts';
@@ -93,12 +94,12 @@ export function livesOf(circuit: Circuit, contract: Contract): LifeCircuit {
       lastNode.push(-1);
       continue;
     }
-    const moved = onCarriers(operation, carrierOf);
-    for (const carrier of operationWires(moved)) {
+    const carried = moved(operation, (wire) => carrierOf[wire]!);
+    for (const carrier of operationWires(carried)) {
       lastNode[carrier] = nodes.length;
       isMoved.delete(carrier);
     }
-    nodes.push({ operation: moved, end: -1 });
+    nodes.push({ operation: carried, end: -1 });
   }
   for (let wire = 0; wire < wires; wire++) {
     const carrier = carrierOf[wire]!;
@@ -132,18 +133,6 @@ function endLife(life: Life, nodes: LifeNode[], last: number, carrier: number): 
   } else if (life.rule === 'dropped' && operation.bit < 0) {
     // its outcome is thrown away, and so is the qubit
     nodes[last] = { operation: null, end: carrier };
-  }
-}
-
-function onCarriers(operation: Operation, carrierOf: Int32Array): Operation {
-  switch (operation.kind) {
-    case 'gate':
-      return { ...operation, wires: operation.wires.map((wire) => carrierOf[wire]!) };
-    case 'measure':
-    case 'reset':
-      return { ...operation, wire: carrierOf[operation.wire]! };
-    default:
-      return operation;
   }
 }
 

@@ -1,14 +1,8 @@
 import { describe, expect, test } from 'vitest';
 import { emptyCircuit, gate, type Operation, unitaryGate } from '../../src/circuit/circuit.ts';
 import { gateTable } from '../../src/circuit/gates.ts';
-import { circuitUnitary } from '../../src/circuit/unitary.ts';
-import {
-  factorsOf,
-  monomialOf,
-  type Selection,
-  selectionOn,
-  withWireOrder,
-} from '../../src/native/structure.ts';
+import { circuitUnitary, withWireOrder } from '../../src/circuit/unitary.ts';
+import { factorsOf, monomialOf, type Selection, selectionOn } from '../../src/native/structure.ts';
 import { fromQuarters } from '../../src/numeric/cosine-sine.ts';
 import { hilbertSchmidtDistance } from '../../src/numeric/distance.ts';
 import { random } from '../../src/numeric/random.ts';
